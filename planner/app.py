@@ -1,0 +1,1 @@
+"""The Streamlit entry: set-up and navigation."""

@@ -1,0 +1,1 @@
+"""Domain objects or frames to charts."""

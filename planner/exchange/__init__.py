@@ -1,0 +1,1 @@
+"""Files in and out: text or bytes to domain objects and back."""

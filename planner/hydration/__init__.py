@@ -1,0 +1,1 @@
+"""Session drinks plans, weighings and the day's water."""

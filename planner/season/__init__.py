@@ -1,0 +1,1 @@
+"""Drivers, places, rounds, itineraries, and the search over them."""

@@ -1,0 +1,1 @@
+"""The use cases: what a page or a command calls."""
