@@ -1,0 +1,1 @@
+"""The sub-commands of `python -m planner`, one module each; `registry.COMMANDS` lists them."""

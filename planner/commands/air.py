@@ -1,0 +1,63 @@
+"""`air ELEVATION_M`: the air at an elevation and the saturation to expect there."""
+
+from __future__ import annotations
+
+import argparse
+import math
+
+from planner.commands.command import Answer, Command, number
+
+
+def _add_arguments(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("elevation_m", metavar="ELEVATION_M", type=number("m"), help="elevation [m]")
+    parser.add_argument(
+        "--pressure-hpa",
+        metavar="P",
+        type=number("hPa"),
+        default=math.nan,
+        help="station pressure as measured [hPa]; not one reduced to sea level",
+    )
+    parser.add_argument(
+        "--latitude",
+        metavar="D",
+        type=number("degrees, north positive"),
+        default=math.nan,
+        help="latitude [deg], north positive: chooses the model atmosphere",
+    )
+    parser.add_argument(
+        "--days",
+        metavar="N",
+        type=number("days"),
+        default=0.0,
+        help="days already spent there by somebody who came straight from sea level (default 0)",
+    )
+    parser.add_argument("--asleep", action="store_true", help="the saturation to expect asleep")
+
+
+def _run(arguments: argparse.Namespace) -> Answer:
+    # Imported here: numpy is not needed to print a usage line.
+    from planner.services.air import air_at
+
+    found = air_at(
+        arguments.elevation_m,
+        latitude_deg=arguments.latitude,
+        measured_pressure_hpa=arguments.pressure_hpa,
+        days=arguments.days,
+        wakefulness="asleep" if arguments.asleep else "awake",
+    )
+    record = {
+        "pressure_hpa": found.pressure_hpa,
+        "pressure_from": found.pressure_from,
+        "air_density_kg_m3": found.air_density_kg_m3,
+        "inspired_po2_mmhg": found.inspired_po2_mmhg,
+        "alveolar_po2_mmhg": found.alveolar_po2_mmhg,
+        "paco2_mmhg": found.paco2_mmhg,
+        "expected_spo2_pct": found.expected_spo2_pct,
+        "low_spo2_pct": found.low_spo2_pct,
+        "high_spo2_pct": found.high_spo2_pct,
+        "aerobic_capacity_pct": found.aerobic_capacity_pct,
+    }
+    return Answer(record, notes=found.cautions)
+
+
+COMMAND = Command("air", "the air at an elevation and the saturation to expect there", _add_arguments, _run)

@@ -1,0 +1,49 @@
+"""Starts the app: Streamlit's own server, bound to this machine only."""
+
+from __future__ import annotations
+
+import os
+import sys
+import tomllib
+from pathlib import Path
+
+STORE_VARIABLE = "PLANNER_STORE"
+PACKAGE = Path(__file__).resolve().parents[1]
+DEFAULT_PORT = 8501
+
+
+def settings_as_flags(config: Path) -> list[str]:
+    """Return the settings of a Streamlit configuration file as command-line flags.
+
+    Flags win over every configuration file and environment variable, so a file that lies in the
+    working folder or in the user's home can neither open the server to the network nor switch
+    telemetry on.
+    """
+    flags: list[str] = []
+    for section, entries in tomllib.loads(config.read_text(encoding="utf-8")).items():
+        for key, value in entries.items():
+            if isinstance(value, dict):
+                continue  # a nested table (theme.light) is looks only: the file itself is enough for it
+            for each in value if isinstance(value, list) else [value]:
+                text = str(each).lower() if isinstance(each, bool) else str(each)
+                flags += [f"--{section}.{key}", text]
+    return flags
+
+
+def start(store: Path | None, port: int) -> int:
+    """Run the app until it is stopped, and return its exit status.
+
+    Parameters: `store` is the database file (None: the user's data folder, or PLANNER_STORE);
+    `port` is where it answers on this machine.
+    """
+    from streamlit.web import cli
+
+    if store is not None:
+        os.environ[STORE_VARIABLE] = str(store.resolve())
+    flags = settings_as_flags(PACKAGE / ".streamlit" / "config.toml")
+    sys.argv = ["streamlit", "run", str(PACKAGE / "app.py"), *flags, "--server.port", str(port)]
+    try:
+        cli.main()
+    except SystemExit as stopped:
+        return stopped.code if isinstance(stopped.code, int) else 0
+    return 0

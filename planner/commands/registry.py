@@ -1,0 +1,15 @@
+"""Every sub-command, in the order in which `--help` shows them: a new one is a module and a line here."""
+
+from __future__ import annotations
+
+from planner.commands import air, backup, check, demo, morning, read
+from planner.commands.command import Command
+
+COMMANDS: tuple[Command, ...] = (
+    air.COMMAND,
+    morning.COMMAND,
+    read.COMMAND,
+    demo.COMMAND,
+    backup.COMMAND,
+    check.COMMAND,
+)
