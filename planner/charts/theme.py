@@ -1,7 +1,7 @@
 """The one table of colours, and what follows from it: shapes, style variables, the charts' manner.
 
-On screen every colour is written as the CSS function light-dark(), so page and chart follow the reader's theme
-by themselves, without the script having to know it. A printed page asks for one of the two by name.
+On screen every colour is written as the CSS function light-dark(), so page and chart follow the reader's
+theme by themselves, without the script having to know it. A printed page asks for one of the two by name.
 """
 
 from __future__ import annotations
