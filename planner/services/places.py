@@ -1,0 +1,124 @@
+"""The air at a venue: by the model atmosphere, or by the pressure measured there."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import datetime
+from math import nan
+from typing import Final, Literal, TypeAlias
+
+from planner.checks import checked
+from planner.errors import InputError
+from planner.physiology.air import site_pressure, station_pressure_from_altimeter_setting_hpa
+from planner.physiology.expectation import Expectation
+from planner.season.exposure import MEASUREMENT_REACH
+from planner.season.model import Place, PressureMeasurement
+from planner.services.air import SiteAir, site_air, straight_from_sea_level
+from planner.store.store import Store
+from planner.units import from_house, to_house
+
+PressureKind: TypeAlias = Literal["station pressure", "altimeter setting"]
+
+# On arrival (day 0) and after so many days there.
+DAYS_SHOWN: Final = (0.0, 3.0, 7.0, 14.0)
+# A typed pressure further from the model than this is refused: judgement. Deep lows and strong highs
+# move the pressure by about 4 %; a pressure reduced to sea level is 20 % off at 2 000 m.
+IMPLAUSIBLE_SHARE: Final = 0.06
+# And beyond this it is taken, but the screen asks to look again: judgement.
+UNUSUAL_SHARE: Final = 0.025
+
+
+@dataclass(frozen=True)
+class VenueAir:
+    """The air at a venue's track and beds, with what to expect at the beds by `DAYS_SHOWN`."""
+
+    place: Place
+    track: SiteAir
+    beds: SiteAir
+    expected_at_track: Expectation
+    expected_at_beds: Expectation
+
+    @property
+    def beds_differ(self) -> bool:
+        """Whether the beds lie at another elevation than the track."""
+        return self.place.bed_elevation_m != self.place.track_elevation_m
+
+
+def venue_air(place: Place, measured_pressure_hpa: float = nan) -> VenueAir:
+    """Return the air at a venue; a pressure measured at the track is carried to the beds by the model's ratio.
+
+    Raises: InputError when the pressure is out of range.
+    """
+    track = site_air(
+        place.track_elevation_m,
+        latitude_deg=place.latitude_deg,
+        measured_pressure_hpa=measured_pressure_hpa,
+    )
+    beds = track
+    if place.bed_elevation_m != place.track_elevation_m:
+        beds_model_hpa = float(site_pressure(place.bed_elevation_m, place.latitude_deg).pressure_hpa)
+        beds = site_air(
+            place.bed_elevation_m,
+            latitude_deg=place.latitude_deg,
+            measured_pressure_hpa=measured_pressure_hpa * beds_model_hpa / model_pressure_hpa(place),
+        )
+    return VenueAir(
+        place=place,
+        track=track,
+        beds=beds,
+        expected_at_track=straight_from_sea_level(track, DAYS_SHOWN),
+        expected_at_beds=straight_from_sea_level(beds, DAYS_SHOWN),
+    )
+
+
+def model_pressure_hpa(place: Place) -> float:
+    """Return the pressure at the track by the model atmosphere for its latitude."""
+    return float(site_pressure(place.track_elevation_m, place.latitude_deg).pressure_hpa)
+
+
+def typed_pressure(
+    place: Place, value: float, unit: str, kind: PressureKind, at: datetime
+) -> PressureMeasurement:
+    """Return what was typed as a station pressure at the track, not yet stored.
+
+    Parameters: `unit` is hPa, mmHg or kPa; `kind` tells a station pressure from an altimeter setting
+    (QNH), which is turned back into the station pressure.
+    Raises: InputError when the value cannot be the pressure at this place.
+    """
+    typed_hpa = to_house("pressure", value, unit)
+    if kind == "altimeter setting":
+        setting = float(checked("altimeter_setting_hpa", typed_hpa, f"altimeter setting in {unit}"))
+        pressure_hpa = float(station_pressure_from_altimeter_setting_hpa(setting, place.track_elevation_m))
+    else:
+        pressure_hpa = float(checked("pressure_hpa", typed_hpa, f"station pressure in {unit}"))
+    model_hpa = model_pressure_hpa(place)
+    if abs(pressure_hpa / model_hpa - 1.0) > IMPLAUSIBLE_SHARE:
+        low, high = (
+            from_house("pressure", model_hpa * (1.0 + sign * IMPLAUSIBLE_SHARE), unit) for sign in (-1, 1)
+        )
+        raise InputError(
+            kind,
+            f"{value:g} {unit}",
+            f"a pressure that gives {low:.0f} to {high:.0f} {unit} at the track of {place.name}; "
+            "a pressure reduced to sea level is not what the air there weighs",
+        )
+    return PressureMeasurement(place.id, at, pressure_hpa, typed=f"{kind} {value:g} {unit}")
+
+
+def is_unusual(place: Place, pressure_hpa: float) -> bool:
+    """Return whether a pressure lies so far from the model that the entry deserves a second look."""
+    return abs(pressure_hpa / model_pressure_hpa(place) - 1.0) > UNUSUAL_SHARE
+
+
+def pressures_of(store: Store, place: Place) -> list[PressureMeasurement]:
+    """Return the measured pressures of a place, the newest first."""
+    kept = store.all(PressureMeasurement, place_id=place.id)
+    return sorted(kept, key=lambda each: each.measured_at, reverse=True)
+
+
+def pressure_in_force(history: list[PressureMeasurement], at: datetime) -> PressureMeasurement | None:
+    """Return the measurement that counts at an instant: the nearest one, if it is near enough in time."""
+    nearest = min(history, key=lambda each: abs(each.measured_at - at), default=None)
+    if nearest is None or abs(nearest.measured_at - at) >= MEASUREMENT_REACH:
+        return None
+    return nearest
