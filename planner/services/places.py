@@ -45,7 +45,7 @@ class VenueAir:
 
 
 def venue_air(place: Place, measured_pressure_hpa: float = nan) -> VenueAir:
-    """Return the air at a venue; a pressure measured at the track is carried to the beds by the model's ratio.
+    """Return the air at a venue; a pressure measured at the track goes to the beds by the model's ratio.
 
     Raises: InputError when the pressure is out of range.
     """

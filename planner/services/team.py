@@ -32,12 +32,12 @@ def typed_value(field: str, value: float | None, quantity: str, kind: str, unit:
     those of `units.TO_HOUSE`.
     Raises: InputError naming the field, the value as typed, and the range in the typed unit.
     """
-    low, high = (from_house(kind, edge, unit) for edge in (QUANTITIES[quantity].low, QUANTITIES[quantity].high))
-    wanted = f"{low:.0f} to {high:.0f} {unit}"
+    known = QUANTITIES[quantity]
+    wanted = f"{from_house(kind, known.low, unit):.0f} to {from_house(kind, known.high, unit):.0f} {unit}"
     if value is None:
         raise InputError(field, "", wanted)
     in_house = to_house(kind, value, unit)
-    if not QUANTITIES[quantity].low <= in_house <= QUANTITIES[quantity].high:
+    if not known.low <= in_house <= known.high:
         raise InputError(field, value, wanted)
     return in_house
 
