@@ -11,6 +11,7 @@ from datetime import date, datetime, timedelta
 from typing import Final
 from zoneinfo import ZoneInfo
 
+from planner.errors import InputError
 from planner.units import TO_HOUSE, from_house
 
 DASH: Final = "–"  # en dash: ranges, and the place of a missing number
@@ -33,7 +34,7 @@ class UnitChoice:
     def __post_init__(self) -> None:
         for kind, known in TO_HOUSE.items():
             if getattr(self, kind) not in known:
-                raise ValueError(f"{kind}: {getattr(self, kind)!r} is none of {', '.join(known)}")
+                raise InputError(f"unit of {kind}", getattr(self, kind), " or ".join(known))
 
 
 METRIC: Final = UnitChoice()

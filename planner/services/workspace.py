@@ -1,0 +1,86 @@
+"""The open database with what belongs to it as a whole: where it lies, what time it is, who reads which units."""
+
+from __future__ import annotations
+
+import json
+import os
+from dataclasses import asdict
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import Final
+
+from platformdirs import user_data_path
+
+from planner.errors import InputError, StoreError
+from planner.season.model import Driver
+from planner.store.store import Store
+from planner.wording import METRIC, UnitChoice
+
+STORE_VARIABLE: Final = "PLANNER_STORE"
+STORE_FILE: Final = "planner.db"
+FROZEN_CLOCK: Final = "clock_frozen_at"
+LONGEST_NAME: Final = 60
+
+
+def default_store_path() -> Path:
+    """Where the database lies: PLANNER_STORE, or planner.db in the user's data folder."""
+    named = os.environ.get(STORE_VARIABLE, "").strip()
+    if named:
+        return Path(named).expanduser()
+    return user_data_path("planner", appauthor=False) / STORE_FILE
+
+
+def open_workspace(path: Path) -> Store:
+    """The store at a path, made there together with its folder if need be.
+
+    Raises: StoreError when the folder cannot be made or the file is not ours, or newer than the program.
+    """
+    try:
+        path.parent.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise StoreError(f"{path.parent}: the folder cannot be made ({error.strerror})") from None
+    return Store.open(path)
+
+
+def now(store: Store) -> datetime:
+    """The present instant in UTC; in the demo season the morning at which its clock stands still."""
+    frozen = store.setting(FROZEN_CLOCK)
+    if frozen is None:
+        return datetime.now(UTC)
+    return datetime.fromisoformat(frozen).astimezone(UTC)
+
+
+def is_demo(store: Store) -> bool:
+    """Whether the clock stands still: the sign of the invented season."""
+    return store.setting(FROZEN_CLOCK) is not None
+
+
+def is_empty(store: Store) -> bool:
+    """Whether there is nobody to look after yet."""
+    return not store.all(Driver)
+
+
+def typed_name(text: str) -> str:
+    """The name of whoever types, tidied.
+
+    Raises: InputError when it is empty or too long.
+    """
+    name = " ".join(text.split())
+    if not 0 < len(name) <= LONGEST_NAME:
+        raise InputError("your name", text, f"1 to {LONGEST_NAME} characters")
+    return name
+
+
+def units_of(store: Store, who: str) -> UnitChoice:
+    """The units that a person has chosen; metric until then."""
+    kept = store.setting(_unit_setting(who))
+    return UnitChoice(**json.loads(kept)) if kept else METRIC
+
+
+def choose_units(store: Store, who: str, choice: UnitChoice) -> None:
+    """Keep a person's choice of units."""
+    store.set_setting(_unit_setting(who), json.dumps(asdict(choice)))
+
+
+def _unit_setting(who: str) -> str:
+    return f"units of {who}"
