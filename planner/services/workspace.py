@@ -1,4 +1,4 @@
-"""The open database with what belongs to it as a whole: where it lies, what time it is, who reads which units."""
+"""The open database with what belongs to it as a whole: its place, the time, whose units."""
 
 from __future__ import annotations
 
