@@ -7,7 +7,6 @@ import sys
 import tomllib
 from pathlib import Path
 
-STORE_VARIABLE = "PLANNER_STORE"
 PACKAGE = Path(__file__).resolve().parents[1]
 DEFAULT_PORT = 8501
 
@@ -36,7 +35,10 @@ def start(store: Path | None, port: int) -> int:
     Parameters: `store` is the database file (None: the user's data folder, or PLANNER_STORE);
     `port` is where it answers on this machine.
     """
+    # Imported here: a sub-command needs neither the server nor the database to print its help.
     from streamlit.web import cli
+
+    from planner.services.workspace import STORE_VARIABLE
 
     if store is not None:
         os.environ[STORE_VARIABLE] = str(store.resolve())

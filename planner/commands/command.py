@@ -56,11 +56,10 @@ def number(unit: str) -> Callable[[str], float]:
 def opened_store(arguments: argparse.Namespace) -> Iterator[Store]:
     """Open the store that the command line names, and close it again."""
     # Imported here so that a command without a store need not wait for the database library.
-    from planner.services.workspace import default_store_path
-    from planner.store.store import Store
+    from planner.services.workspace import default_store_path, open_workspace
 
     given: Path | None = arguments.store
-    store = Store.open(given or default_store_path())
+    store = open_workspace(given or default_store_path())
     try:
         yield store
     finally:

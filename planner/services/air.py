@@ -45,9 +45,7 @@ class SiteAir:
         return 100.0 * self.inspired_po2_mmhg / float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA))
 
 
-def site_air(
-    elevation_m: float, *, latitude_deg: float = nan, measured_pressure_hpa: float = nan
-) -> SiteAir:
+def site_air(elevation_m: float, *, latitude_deg: float = nan, measured_pressure_hpa: float = nan) -> SiteAir:
     """Return the air at a site; a measured station pressure beats the model atmospheres.
 
     Raises: InputError naming what lies out of range.
