@@ -8,6 +8,7 @@ from typing import Literal, TypeAlias
 
 Wakefulness: TypeAlias = Literal["awake", "asleep"]
 Circumstance: TypeAlias = Literal["at rest", "after a session"]
+NoticeKind: TypeAlias = Literal["told the physician", "note"]
 Outcome: TypeAlias = Literal["in range", "repeat", "refer", "urgent"]
 
 
@@ -53,7 +54,7 @@ class Notice:
 
     driver_id: int
     at: datetime
-    kind: Literal["told the physician", "note"]
+    kind: NoticeKind
     text: str = ""
     entered_by: str = ""
     id: int = 0
