@@ -5,6 +5,7 @@ from __future__ import annotations
 import itertools
 import json
 import os
+import socket
 import subprocess
 import sys
 from pathlib import Path
@@ -235,3 +236,14 @@ def test_the_app_is_started_with_the_shipped_settings_as_flags(
     assert ("--server.port", "8699") in pairs
     assert os.environ["PLANNER_STORE"] == str(tmp_path / "x.db")
     assert Path(words[2]) == application.PACKAGE / "app.py"
+
+
+def test_a_port_in_use_is_refused_in_one_line(capsys: pytest.CaptureFixture[str]) -> None:
+    with socket.socket() as taken:
+        taken.bind(("localhost", 0))
+        taken.listen()
+        number = taken.getsockname()[1]
+        assert main(["--port", str(number)]) == 2
+    assert capsys.readouterr().err == (
+        f"planner: port: {number} cannot be used, expected a port that no other program uses\n"
+    )

@@ -7,6 +7,9 @@ import math
 
 from planner.commands.command import Answer, Command, number
 
+CAUTION = "Of healthy people at rest, 95 % of readings lie in this range; no diagnosis: the physician decides."
+BEYOND = "Beyond the elevations and times that the model was fitted to: an extrapolation."
+
 
 def _add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("elevation_m", metavar="ELEVATION_M", type=number("m"), help="elevation [m]")
@@ -36,28 +39,28 @@ def _add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def _run(arguments: argparse.Namespace) -> Answer:
     # Imported here: numpy is not needed to print a usage line.
-    from planner.services.air import air_at
+    from planner.services.air import capacity_there, site_air, straight_from_sea_level
 
-    found = air_at(
+    air = site_air(
         arguments.elevation_m,
         latitude_deg=arguments.latitude,
         measured_pressure_hpa=arguments.pressure_hpa,
-        days=arguments.days,
-        wakefulness="asleep" if arguments.asleep else "awake",
     )
+    days = [arguments.days]
+    expected = straight_from_sea_level(air, days, wakefulness="asleep" if arguments.asleep else "awake")
     record = {
-        "pressure_hpa": found.pressure_hpa,
-        "pressure_from": found.pressure_from,
-        "air_density_kg_m3": found.air_density_kg_m3,
-        "inspired_po2_mmhg": found.inspired_po2_mmhg,
-        "alveolar_po2_mmhg": found.alveolar_po2_mmhg,
-        "paco2_mmhg": found.paco2_mmhg,
-        "expected_spo2_pct": found.expected_spo2_pct,
-        "low_spo2_pct": found.low_spo2_pct,
-        "high_spo2_pct": found.high_spo2_pct,
-        "aerobic_capacity_pct": found.aerobic_capacity_pct,
+        "pressure_hpa": air.pressure_hpa,
+        "pressure_from": air.pressure_from,
+        "air_density_kg_m3": air.air_density_kg_m3,
+        "inspired_po2_mmhg": air.inspired_po2_mmhg,
+        "alveolar_po2_mmhg": float(expected.alveolar_po2_mmhg[0]),
+        "paco2_mmhg": float(expected.paco2_mmhg[0]),
+        "expected_spo2_pct": float(expected.mean_spo2_pct[0]),
+        "low_spo2_pct": float(expected.low_spo2_pct[0]),
+        "high_spo2_pct": float(expected.high_spo2_pct[0]),
+        "aerobic_capacity_pct": float(capacity_there(air, days).mean_pct[0]),
     }
-    return Answer(record, notes=found.cautions)
+    return Answer(record, notes=(BEYOND, CAUTION) if expected.beyond_validity[0] else (CAUTION,))
 
 
 COMMAND = Command("air", "the air at an elevation and the saturation to expect there", _add_arguments, _run)

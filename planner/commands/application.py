@@ -3,9 +3,12 @@
 from __future__ import annotations
 
 import os
+import socket
 import sys
 import tomllib
 from pathlib import Path
+
+from planner.errors import InputError
 
 PACKAGE = Path(__file__).resolve().parents[1]
 DEFAULT_PORT = 8501
@@ -34,12 +37,14 @@ def start(store: Path | None, port: int) -> int:
 
     Parameters: `store` is the database file (None: the user's data folder, or PLANNER_STORE);
     `port` is where it answers on this machine.
+    Raises: InputError when another program answers on that port.
     """
     # Imported here: a sub-command needs neither the server nor the database to print its help.
     from streamlit.web import cli
 
     from planner.services.workspace import STORE_VARIABLE
 
+    _refuse_taken_port(port)
     if store is not None:
         os.environ[STORE_VARIABLE] = str(store.resolve())
     flags = settings_as_flags(PACKAGE / ".streamlit" / "config.toml")
@@ -49,3 +54,13 @@ def start(store: Path | None, port: int) -> int:
     except SystemExit as stopped:
         return stopped.code if isinstance(stopped.code, int) else 0
     return 0
+
+
+def _refuse_taken_port(port: int) -> None:
+    with socket.socket() as probe:
+        # As the server itself does, so that a port whose last connections are still closing is free.
+        probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        try:
+            probe.bind(("localhost", port))
+        except OSError:
+            raise InputError("port", port, "a port that no other program uses") from None

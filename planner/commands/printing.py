@@ -64,13 +64,18 @@ def _pairs(record: Record) -> list[str]:
     return [f"{key.ljust(width)}  {_cell(key, value)}" for key, value in record.items()]
 
 
+def _is_numeric(values: Sequence[object]) -> bool:
+    known = [value for value in values if value is not None]
+    return bool(known) and all(isinstance(value, int | float) for value in known)
+
+
 def _table(rows: Sequence[Record]) -> list[str]:
     if not rows:
         return []
     keys = list(rows[0])
     cells = [[_cell(key, row[key]) for key in keys] for row in rows]
     widths = [max(len(key), *(len(line[i]) for line in cells)) for i, key in enumerate(keys)]
-    to_right = [all(isinstance(row[key], int | float | None) for row in rows) for key in keys]
+    to_right = [_is_numeric([row[key] for row in rows]) for key in keys]
 
     def line(texts: Sequence[str]) -> str:
         parts = [

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import nan
+from math import isfinite, nan
 from typing import Final
 
 import numpy as np
@@ -13,7 +13,13 @@ from planner.checks import FloatArray, checked
 from planner.constants import SEA_LEVEL_PRESSURE_HPA
 from planner.monitoring.model import Wakefulness
 from planner.physiology.acclimatisation import ExposureHistory
-from planner.physiology.air import site_pressure, standard_air_density_kg_m3, standard_pressure_hpa
+from planner.physiology.air import (
+    site_pressure,
+    standard_air_density_kg_m3,
+    standard_elevation_m,
+    standard_pressure_hpa,
+)
+from planner.physiology.capacity import aerobic_capacity_pct, aerobic_capacity_range_pct
 from planner.physiology.expectation import Expectation, expected_spo2
 from planner.physiology.oxygen import inspired_po2_mmhg
 
@@ -30,6 +36,7 @@ class SiteAir:
     elevation_m: float
     pressure_hpa: float
     pressure_from: str
+    measured: bool
     pressure_sd_hpa: float
     air_density_kg_m3: float
     inspired_po2_mmhg: float
@@ -58,6 +65,7 @@ def site_air(elevation_m: float, *, latitude_deg: float = nan, measured_pressure
         elevation_m=elevation_m,
         pressure_hpa=pressure_hpa,
         pressure_from=str(pressure.pressure_from),
+        measured=isfinite(measured_pressure_hpa),
         pressure_sd_hpa=float(pressure.sd_hpa),
         air_density_kg_m3=float(standard_air_density_kg_m3(elevation_m)) * ratio,
         inspired_po2_mmhg=float(inspired_po2_mmhg(pressure_hpa)),
@@ -77,3 +85,25 @@ def straight_from_sea_level(
         inspired_po2_mmhg=np.array([float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA)), air.inspired_po2_mmhg]),
     )
     return expected_spo2(history, at_h, wakefulness=wakefulness, pressure_sd_hpa=air.pressure_sd_hpa)
+
+
+@dataclass(frozen=True)
+class Capacity:
+    """Aerobic capacity in per cent of the person's own at sea level, with the range of 95 % of people."""
+
+    mean_pct: FloatArray
+    low_pct: FloatArray
+    high_pct: FloatArray
+
+
+def capacity_there(air: SiteAir, days: Sequence[float]) -> Capacity:
+    """Return the aerobic capacity after so many days there, straight from sea level.
+
+    The published curves go by elevation; a measured pressure counts as the standard elevation it stands for.
+    """
+    elevation_m = standard_elevation_m(air.pressure_hpa) if air.measured else air.elevation_m
+    elevation = np.full(len(days), elevation_m)
+    at = np.asarray(days, dtype=np.float64)
+    low, high = aerobic_capacity_range_pct(elevation, at)
+    mean = aerobic_capacity_pct(elevation, at)
+    return Capacity(np.asarray(mean), np.asarray(low), np.asarray(high))

@@ -186,7 +186,7 @@ def nights(stay: Stay, places: Mapping[int, Place], until: datetime) -> int:
 
 
 def _last_fixed_before(calendar: Calendar, driver: Driver, given: Round) -> tuple[datetime, str] | None:
-    """Return when the last fixed thing before a round ends for a driver, and what it is; None at the first."""
+    """Return when the last fixed thing before a round ends, and its name; None before the first one."""
     start = calendar.starts_at(given)
     fixed = [(calendar.ends_at(other), other.name) for other in calendar.rounds]
     fixed += [(one.ends_at, one.name) for one in calendar.commitments if one.driver_id == driver.id]
