@@ -62,14 +62,14 @@ def number_range(low: float | None, high: float | None, decimals: int = 0) -> st
     return f"{number(low, decimals)}{DASH}{number(high, decimals)}"
 
 
-def per_cent(value: float | None) -> str:
-    """A whole per cent: "88 %"."""
-    return _with_unit(number(value), "%")
+def per_cent(value: float | None, decimals: int = 0) -> str:
+    """A per cent, whole unless asked otherwise: "88 %"."""
+    return _with_unit(number(value, decimals), "%")
 
 
-def per_cent_range(low: float | None, high: float | None) -> str:
-    """A range in whole per cent: "90–96 %"."""
-    return _with_unit(number_range(low, high), "%")
+def per_cent_range(low: float | None, high: float | None, decimals: int = 0) -> str:
+    """A range in per cent, whole unless asked otherwise: "90–96 %"."""
+    return _with_unit(number_range(low, high, decimals), "%")
 
 
 def elevation(value_m: float | None, units: UnitChoice = METRIC) -> str:

@@ -1,0 +1,48 @@
+"""The style sheet that every page carries. Colours come from the theme's table by name only."""
+
+from __future__ import annotations
+
+from typing import Final
+
+from planner.charts.strip import STRIP_STYLE
+from planner.charts.theme import style_variables
+
+_PAGE: Final = """
+.stMainBlockContainer{max-width:72rem;padding-left:1.25rem;padding-right:1.25rem}
+.stApp{font-variant-numeric:tabular-nums lining-nums}
+.stApp [data-testid="stHtml"]{overflow-wrap:anywhere}
+button[data-testid^="stBaseButton-primary"],
+button[data-testid^="stBaseButton-primary"] *{color:var(--on-accent)}
+button[data-testid="stBaseButton-tertiary"]{color:var(--accent)}
+[data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
+.p-over{font-size:.8125rem;color:var(--muted);letter-spacing:.02em;line-height:1.4}
+.p-answer{font-size:1.375rem;font-weight:600;line-height:1.3;margin:0;padding:0}
+.p-line{color:var(--muted);font-size:.9375rem;line-height:1.45}
+.p-foot{color:var(--muted);font-size:.8125rem;line-height:1.5;border-top:1px solid var(--rule);
+ padding-top:.75rem;margin-top:1.25rem}
+.p-signs{margin:.25rem 0 .5rem;padding-left:1.1rem}
+.p-out{font-weight:600;white-space:nowrap}
+.p-out.in-range{color:var(--in-range);font-weight:500}
+.p-out.repeat{color:var(--repeat)}
+.p-out.refer{color:var(--refer)}
+.p-out.not-measured{color:var(--muted);font-weight:500}
+.p-out.urgent{color:var(--urgent);background:var(--urgent-ground);font-weight:700;padding:.1rem .5rem;
+ border-radius:.25rem}
+.p-row{display:grid;grid-template-columns:7rem 8.5rem minmax(0,1fr) 13rem;column-gap:1rem;align-items:start}
+.p-name{font-weight:600;line-height:1.35}
+.p-value{font-size:1.375rem;font-weight:600;line-height:1.2}
+.p-small{font-size:.8125rem;color:var(--muted);line-height:1.4}
+.p-why{font-size:.9375rem;line-height:1.4}
+.p-do{font-weight:600}
+@media (max-width:640px){
+ .stMainBlockContainer{padding-left:.875rem;padding-right:.875rem}
+ .p-row{grid-template-columns:minmax(0,1fr) auto;row-gap:.35rem}
+ .p-row .p-wide{grid-column:1/-1}
+ .p-answer{font-size:1.25rem}
+}
+"""
+
+
+def style_sheet() -> str:
+    """The whole style as one <style> element."""
+    return f"<style>:root,.stApp{{{style_variables()}}}{_PAGE}{STRIP_STYLE}</style>"
