@@ -8,7 +8,10 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Final, Literal, TypeAlias
+
+import numpy as np
 
 from planner.checks import checked
 from planner.errors import InputError
@@ -156,7 +159,7 @@ def planned_ascent_risk(
     """
     if history not in _OF_HISTORY:
         raise InputError("history", history, f"one of {', '.join(_OF_HISTORY)}")
-    beds = [float(b) for b in checked("elevation_m", list(bed_elevations_m), "bed_elevations_m")]
+    beds = [float(b) for b in checked("elevation_m", np.asarray(bed_elevations_m), "bed_elevations_m")]
     start = float(checked("elevation_m", start_elevation_m, "start_elevation_m"))
     found: list[tuple[RiskClass, str]] = [(_OF_HISTORY[history], f"history of altitude illness: {history}")]
     if beds:
@@ -189,7 +192,7 @@ def ascent_cautions(bed_elevations_m: Sequence[float], start_elevation_m: float 
         >>> [c.night for c in ascent_cautions([2800.0, 3400.0, 4000.0])]
         [2]
     """
-    beds = [float(b) for b in checked("elevation_m", list(bed_elevations_m), "bed_elevations_m")]
+    beds = [float(b) for b in checked("elevation_m", np.asarray(bed_elevations_m), "bed_elevations_m")]
     before = float(checked("elevation_m", start_elevation_m, "start_elevation_m"))
     cautions: list[AscentCaution] = []
     climbing = 0
@@ -233,7 +236,7 @@ def _ascent_rate(beds_m: Sequence[float], start_m: float) -> tuple[RiskClass, st
     fast = False
     extra_missing = False
     climbed = 0.0
-    for before, bed in zip(beds_m, beds_m[1:], strict=False):
+    for before, bed in pairwise(beds_m):
         gain = _counted_gain(before, bed)
         fast = fast or gain > LARGEST_NIGHTLY_GAIN_M
         climbed = climbed + gain if gain > 0.0 else 0.0  # a night that does not climb is the extra night

@@ -1,0 +1,215 @@
+"""How breathing answers thin air: from inspired oxygen and the state of acclimatisation to arterial blood.
+
+The model in five sentences. What drives breathing is the inspired oxygen missing against sea level. Alveolar
+ventilation rises, once acclimatised, in proportion to it (the target); a share of the gap between target and
+state is answered within minutes by the carotid bodies, the more the thinner the air; the state moves to the
+target over days. PaCO2 follows from ventilation by the alveolar ventilation equation, pH from PaCO2 by
+Henderson-Hasselbalch with little buffering of what came within minutes and the kidneys' compensation of what
+the state has made lasting. Alveolar oxygen follows from the full alveolar gas equation. Arterial saturation is
+that of blood in balance with the alveoli less a venous admixture, constant in points of saturation at rest
+(shunt fraction times the oxygen taken from the blood), so the alveolar-arterial difference in mmHg is large
+at sea level and small on the steep part of the curve, as measured.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final, Literal, TypeAlias
+
+import numpy as np
+
+from planner.checks import FloatArray, FloatLike, checked, like
+from planner.constants import AIR_OXYGEN_FRACTION, SEA_LEVEL_PRESSURE_HPA
+from planner.errors import InputError
+from planner.physiology.blood import LINEAR, SCALE, STANDARD_PH, po2_mmhg
+from planner.physiology.oxygen import inspired_po2_mmhg as inspired_from_pressure
+from planner.physiology.population import POPULATION, Population
+
+Wakefulness: TypeAlias = Literal["awake", "asleep"]
+
+REFERENCE_INSPIRED_PO2_MMHG: Final = float(inspired_from_pressure(SEA_LEVEL_PRESSURE_HPA))
+
+# Henderson-Hasselbalch at 37 C: pK 6.1 and the solubility of CO2 (published, every textbook).
+PK: Final = 6.1
+CO2_SOLUBILITY_MMOL_L_PER_MMHG: Final = 0.0307
+# Fall of bicarbonate per mmHg of PaCO2 lost within minutes, by the buffers alone (from memory: 2 mmol/L per
+# 10 mmHg, the textbook rule for acute respiratory alkalosis).
+ACUTE_BUFFERING: Final = 0.2
+LOWEST_ALVEOLAR_PO2_MMHG: Final = 1.0  # keeps the chain finite where nobody lives
+
+
+@dataclass(frozen=True)
+class ArterialGases:
+    """The chain at rest: ventilation relative to sea level [1], tensions [mmHg], pH [1], saturation [%]."""
+
+    alveolar_ventilation: FloatLike
+    paco2_mmhg: FloatLike
+    ph: FloatLike
+    alveolar_po2_mmhg: FloatLike
+    saturation_pct: FloatLike
+    arterial_po2_mmhg: FloatLike
+
+    @property
+    def alveolar_arterial_difference_mmhg(self) -> FloatLike:
+        """Alveolar less arterial oxygen tension [mmHg]."""
+        return self.alveolar_po2_mmhg - self.arterial_po2_mmhg
+
+
+@dataclass(frozen=True)
+class Chain:
+    """The same inside, without the arterial tension, plus the slope of saturation by inspired oxygen."""
+
+    ventilation: FloatArray
+    paco2: FloatArray
+    ph: FloatArray
+    alveolar: FloatArray
+    saturation: FloatArray
+    slope_pct_per_mmhg: FloatArray
+
+
+def ventilatory_target(inspired_po2_mmhg: FloatLike) -> FloatLike:
+    """Rise of alveolar ventilation that somebody fully acclimatised to an inspired oxygen tension has.
+
+    Parameters:
+        inspired_po2_mmhg: oxygen tension of moist inspired gas [mmHg], scalar or array.
+    Returns:
+        Rise relative to sea level [1], the shape of the input; 0 from sea level's tension upwards.
+    Raises:
+        InputError: a tension out of range.
+    Valid:
+        75 to 150 mmHg, the fit's data; linear below. Lifelong highlanders may breathe less.
+    Source:
+        Fitted (computed) to residents' and by-day PaCO2; see population_model_summary.
+    Example:
+        >>> ventilatory_target(150.0)
+        0.0
+    """
+    inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
+    return like(target_of(inspired, POPULATION), inspired_po2_mmhg)
+
+
+def acute_share(inspired_po2_mmhg: FloatLike) -> FloatLike:
+    """Share of the gap between ventilatory target and state that is answered within minutes.
+
+    Parameters:
+        inspired_po2_mmhg: oxygen tension of moist inspired gas [mmHg], scalar or array.
+    Returns:
+        Share from 0 to 1 [1], the shape of the input.
+    Raises:
+        InputError: a tension out of range.
+    Valid:
+        75 to 150 mmHg, the fit's data.
+    Source:
+        A logistic curve, fitted (computed) to PaCO2 and saturation on arrival; its shape is judgement.
+    Example:
+        >>> acute_share(150.0) < 0.01
+        True
+    """
+    inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
+    return like(share_of(inspired, POPULATION), inspired_po2_mmhg)
+
+
+def arterial_gases(
+    inspired_po2_mmhg: FloatLike,
+    ventilatory_state: FloatLike,
+    breathing_response: FloatLike = 1.0,
+    wakefulness: Wakefulness = "awake",
+) -> ArterialGases:
+    """Arterial blood at rest for a state of acclimatisation.
+
+    Parameters:
+        inspired_po2_mmhg: oxygen tension of moist inspired gas [mmHg], scalar or array.
+        ventilatory_state: lasting rise of alveolar ventilation of the population [1], scalar or array.
+        breathing_response: the person's response over the population's median [1], scalar or array.
+        wakefulness: "awake" or "asleep" [word].
+    Returns:
+        ArterialGases, each field in the common shape of the inputs.
+    Raises:
+        InputError: an input out of range or another word.
+    Valid:
+        Rest, 0 to 5000 m and 75 to 150 mmHg; healthy lungs; no carbon monoxide.
+    Source:
+        The chain of this module with constants fitted (computed) to published rows.
+    Example:
+        >>> round(float(arterial_gases(149.2, 0.0).saturation_pct))
+        97
+    """
+    inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
+    state = checked("ventilatory_state", ventilatory_state)
+    response = checked("breathing_response", breathing_response)
+    chain = chain_of(inspired, state, response, asleep=is_asleep(wakefulness), population=POPULATION)
+    given = (inspired_po2_mmhg, ventilatory_state, breathing_response)
+    arterial = po2_mmhg(chain.saturation, chain.ph)
+    return ArterialGases(
+        alveolar_ventilation=like(1.0 + chain.ventilation, *given),
+        paco2_mmhg=like(chain.paco2, *given),
+        ph=like(chain.ph, *given),
+        alveolar_po2_mmhg=like(chain.alveolar, *given),
+        saturation_pct=like(chain.saturation, *given),
+        arterial_po2_mmhg=like(np.asarray(arterial), *given),
+    )
+
+
+def is_asleep(wakefulness: str) -> bool:
+    """Whether the word says asleep.
+
+    Parameters:
+        wakefulness: "awake" or "asleep" [word].
+    Returns:
+        True for "asleep" [1].
+    Raises:
+        InputError: any other word.
+    Valid:
+        The two words.
+    Source:
+        None needed.
+    """
+    if wakefulness not in ("awake", "asleep"):
+        raise InputError("wakefulness", wakefulness, "awake or asleep")
+    return wakefulness == "asleep"
+
+
+def target_of(inspired: FloatArray, population: Population) -> FloatArray:
+    missing = np.maximum(REFERENCE_INSPIRED_PO2_MMHG - inspired, 0.0)
+    return np.asarray(population.ventilation_gain_per_mmhg * missing)
+
+
+def share_of(inspired: FloatArray, population: Population) -> FloatArray:
+    steps = (inspired - population.acute_half_mmhg) / population.acute_width_mmhg
+    return np.asarray(1.0 / (1.0 + np.exp(np.minimum(steps, 500.0))))
+
+
+def chain_of(
+    inspired: FloatArray, state: FloatArray, response: FloatArray, *, asleep: bool, population: Population
+) -> Chain:
+    """The chain on arrays without guards: the one place where it is written down."""
+    gap = np.maximum(target_of(inspired, population) - state, 0.0)
+    lasting = response * state
+    ventilation = response * (state + share_of(inspired, population) * gap)
+    paco2_awake = population.sea_level_paco2_mmhg / (1.0 + ventilation)
+    lasting_paco2 = population.sea_level_paco2_mmhg / (1.0 + lasting)
+    rise = population.sleep_paco2_rise_mmhg if asleep else 0.0
+    paco2 = paco2_awake + rise
+    bicarbonate = (
+        _sea_level_bicarbonate(population)
+        - population.chronic_buffering * (population.sea_level_paco2_mmhg - lasting_paco2)
+        - ACUTE_BUFFERING * (lasting_paco2 - paco2)
+    )
+    ph = PK + np.log10(bicarbonate / (CO2_SOLUBILITY_MMOL_L_PER_MMHG * paco2))
+    exchanged = AIR_OXYGEN_FRACTION + (1.0 - AIR_OXYGEN_FRACTION) / population.respiratory_quotient
+    alveolar = np.maximum(inspired - exchanged * paco2, LOWEST_ALVEOLAR_PO2_MMHG)
+    bohr = (alveolar / 26.6) ** 0.184 - 2.2
+    standard = alveolar * np.exp(-bohr * (ph - STANDARD_PH))
+    content = standard * (standard * standard + LINEAR)
+    capillary = content / (content + SCALE)
+    saturation = np.maximum(100.0 * capillary - population.venous_admixture_pct, 0.0)
+    by_tension = (3.0 * standard * standard + LINEAR) / content * capillary * (1.0 - capillary)
+    slope = 100.0 * by_tension * standard / alveolar
+    return Chain(ventilation, paco2, ph, alveolar, saturation, slope)
+
+
+def _sea_level_bicarbonate(population: Population) -> float:
+    """Bicarbonate [mmol/L] that makes pH 7.40 at the sea-level PaCO2."""
+    return float(
+        10.0 ** (STANDARD_PH - PK) * CO2_SOLUBILITY_MMOL_L_PER_MMHG * population.sea_level_paco2_mmhg
+    )
