@@ -87,7 +87,7 @@ def season_chart(
 def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     """Each round as a point on the ground with its name standing on it."""
     base = alt.Chart(rounds).encode(x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")])
-    stands = {"angle": 270, "align": "left", "baseline": "middle", "dx": 9, "fontSize": 11}
+    stands: dict[str, Any] = {"angle": 270, "align": "left", "baseline": "middle", "dx": 9, "fontSize": 11}
     return [
         base.mark_point(filled=True, size=28, shape="circle", color=colour("course_line", mode), opacity=1),
         base.transform_filter("datum.high")

@@ -7,7 +7,7 @@ import math
 
 from planner.commands.command import Answer, Command, number
 
-CAUTION = "Of healthy people at rest, 95 % of readings lie in this range; no diagnosis: the physician decides."
+CAUTION = "Of healthy people at rest 95 % of readings lie in this range; no diagnosis, the physician decides."
 BEYOND = "Beyond the elevations and times that the model was fitted to: an extrapolation."
 
 
@@ -46,21 +46,21 @@ def _run(arguments: argparse.Namespace) -> Answer:
         latitude_deg=arguments.latitude,
         measured_pressure_hpa=arguments.pressure_hpa,
     )
-    days = [arguments.days]
+    days: float = arguments.days
     expected = straight_from_sea_level(air, days, wakefulness="asleep" if arguments.asleep else "awake")
     record = {
         "pressure_hpa": air.pressure_hpa,
         "pressure_from": air.pressure_from,
         "air_density_kg_m3": air.air_density_kg_m3,
         "inspired_po2_mmhg": air.inspired_po2_mmhg,
-        "alveolar_po2_mmhg": float(expected.alveolar_po2_mmhg[0]),
-        "paco2_mmhg": float(expected.paco2_mmhg[0]),
-        "expected_spo2_pct": float(expected.mean_spo2_pct[0]),
-        "low_spo2_pct": float(expected.low_spo2_pct[0]),
-        "high_spo2_pct": float(expected.high_spo2_pct[0]),
-        "aerobic_capacity_pct": float(capacity_there(air, days).mean_pct[0]),
+        "alveolar_po2_mmhg": float(expected.alveolar_po2_mmhg),
+        "paco2_mmhg": float(expected.paco2_mmhg),
+        "expected_spo2_pct": float(expected.mean_spo2_pct),
+        "low_spo2_pct": float(expected.low_spo2_pct),
+        "high_spo2_pct": float(expected.high_spo2_pct),
+        "aerobic_capacity_pct": float(capacity_there(air, days).mean_pct),
     }
-    return Answer(record, notes=(BEYOND, CAUTION) if expected.beyond_validity[0] else (CAUTION,))
+    return Answer(record, notes=(BEYOND, CAUTION) if expected.beyond_validity else (CAUTION,))
 
 
 COMMAND = Command("air", "the air at an elevation and the saturation to expect there", _add_arguments, _run)

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from math import isfinite, nan
 from typing import Final
 
 import numpy as np
 
-from planner.checks import FloatArray, checked
+from planner.checks import FloatLike, checked, like
 from planner.constants import SEA_LEVEL_PRESSURE_HPA
 from planner.monitoring.model import Wakefulness
 from planner.physiology.acclimatisation import ExposureHistory
@@ -24,6 +23,7 @@ from planner.physiology.expectation import Expectation, expected_spo2
 from planner.physiology.oxygen import inspired_po2_mmhg
 
 HOURS_PER_DAY: Final = 24.0
+SEA_LEVEL_INSPIRED_PO2_MMHG: Final = float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA))
 
 
 @dataclass(frozen=True)
@@ -49,7 +49,7 @@ class SiteAir:
     @property
     def oxygen_share_pct(self) -> float:
         """Inspired oxygen tension in per cent of that at standard sea level."""
-        return 100.0 * self.inspired_po2_mmhg / float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA))
+        return 100.0 * self.inspired_po2_mmhg / SEA_LEVEL_INSPIRED_PO2_MMHG
 
 
 def site_air(elevation_m: float, *, latitude_deg: float = nan, measured_pressure_hpa: float = nan) -> SiteAir:
@@ -73,37 +73,37 @@ def site_air(elevation_m: float, *, latitude_deg: float = nan, measured_pressure
 
 
 def straight_from_sea_level(
-    air: SiteAir, days: Sequence[float], *, wakefulness: Wakefulness = "awake"
+    air: SiteAir, days: FloatLike, *, wakefulness: Wakefulness = "awake"
 ) -> Expectation:
     """Return what to expect of the population after so many days there, straight from sea level.
 
+    The result has the shape of `days`.
     Raises: InputError when a number of days is out of range.
     """
-    at_h: FloatArray = checked("days", np.asarray(days, dtype=np.float64)) * HOURS_PER_DAY
+    at_h = checked("days", days) * HOURS_PER_DAY
     history = ExposureHistory(
         start_h=np.array([-HOURS_PER_DAY, 0.0]),
-        inspired_po2_mmhg=np.array([float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA)), air.inspired_po2_mmhg]),
+        inspired_po2_mmhg=np.array([SEA_LEVEL_INSPIRED_PO2_MMHG, air.inspired_po2_mmhg]),
     )
-    return expected_spo2(history, at_h, wakefulness=wakefulness, pressure_sd_hpa=air.pressure_sd_hpa)
+    return expected_spo2(
+        history, like(at_h, days), wakefulness=wakefulness, pressure_sd_hpa=air.pressure_sd_hpa
+    )
 
 
 @dataclass(frozen=True)
 class Capacity:
     """Aerobic capacity in per cent of the person's own at sea level, with the range of 95 % of people."""
 
-    mean_pct: FloatArray
-    low_pct: FloatArray
-    high_pct: FloatArray
+    mean_pct: FloatLike
+    low_pct: FloatLike
+    high_pct: FloatLike
 
 
-def capacity_there(air: SiteAir, days: Sequence[float]) -> Capacity:
+def capacity_there(air: SiteAir, days: FloatLike) -> Capacity:
     """Return the aerobic capacity after so many days there, straight from sea level.
 
     The published curves go by elevation; a measured pressure counts as the standard elevation it stands for.
     """
     elevation_m = standard_elevation_m(air.pressure_hpa) if air.measured else air.elevation_m
-    elevation = np.full(len(days), elevation_m)
-    at = np.asarray(days, dtype=np.float64)
-    low, high = aerobic_capacity_range_pct(elevation, at)
-    mean = aerobic_capacity_pct(elevation, at)
-    return Capacity(np.asarray(mean), np.asarray(low), np.asarray(high))
+    low, high = aerobic_capacity_range_pct(elevation_m, days)
+    return Capacity(aerobic_capacity_pct(elevation_m, days), low, high)

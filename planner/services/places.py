@@ -2,18 +2,20 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from math import nan
 from typing import Final, Literal, TypeAlias
 
+import numpy as np
+
 from planner.checks import checked
 from planner.errors import InputError
 from planner.physiology.air import site_pressure, station_pressure_from_altimeter_setting_hpa
-from planner.physiology.expectation import Expectation
 from planner.season.exposure import MEASUREMENT_REACH
 from planner.season.model import Place, PressureMeasurement
-from planner.services.air import SiteAir, site_air, straight_from_sea_level
+from planner.services.air import SiteAir, capacity_there, site_air, straight_from_sea_level
 from planner.store.store import Store
 from planner.units import from_house, to_house
 
@@ -29,14 +31,26 @@ UNUSUAL_SHARE: Final = 0.025
 
 
 @dataclass(frozen=True)
+class DayThere:
+    """What to expect of the population after so many days there, straight from sea level."""
+
+    days: float
+    low_pct: float
+    mean_pct: float
+    high_pct: float
+    low_capacity_pct: float
+    capacity_pct: float
+    high_capacity_pct: float
+    beyond_validity: bool
+
+
+@dataclass(frozen=True)
 class VenueAir:
-    """The air at a venue's track and beds, with what to expect at the beds by `DAYS_SHOWN`."""
+    """The air at a venue's track and beds."""
 
     place: Place
     track: SiteAir
     beds: SiteAir
-    expected_at_track: Expectation
-    expected_at_beds: Expectation
 
     @property
     def beds_differ(self) -> bool:
@@ -50,25 +64,36 @@ def venue_air(place: Place, measured_pressure_hpa: float = nan) -> VenueAir:
     Raises: InputError when the pressure is out of range.
     """
     track = site_air(
-        place.track_elevation_m,
+        place.track_elevation_m, latitude_deg=place.latitude_deg, measured_pressure_hpa=measured_pressure_hpa
+    )
+    if place.bed_elevation_m == place.track_elevation_m:
+        return VenueAir(place, track, track)
+    beds_model_hpa = float(site_pressure(place.bed_elevation_m, place.latitude_deg).pressure_hpa)
+    beds = site_air(
+        place.bed_elevation_m,
         latitude_deg=place.latitude_deg,
-        measured_pressure_hpa=measured_pressure_hpa,
+        measured_pressure_hpa=measured_pressure_hpa * beds_model_hpa / model_pressure_hpa(place),
     )
-    beds = track
-    if place.bed_elevation_m != place.track_elevation_m:
-        beds_model_hpa = float(site_pressure(place.bed_elevation_m, place.latitude_deg).pressure_hpa)
-        beds = site_air(
-            place.bed_elevation_m,
-            latitude_deg=place.latitude_deg,
-            measured_pressure_hpa=measured_pressure_hpa * beds_model_hpa / model_pressure_hpa(place),
+    return VenueAir(place, track, beds)
+
+
+def days_there(air: SiteAir, days: Sequence[float] = DAYS_SHOWN) -> list[DayThere]:
+    """Return what to expect at an elevation by days there, living and resting at that elevation."""
+    at = np.asarray(days, dtype=np.float64)
+    expected, capacity = straight_from_sea_level(air, at), capacity_there(air, at)
+    return [
+        DayThere(
+            days=float(at[i]),
+            low_pct=float(np.atleast_1d(expected.low_spo2_pct)[i]),
+            mean_pct=float(np.atleast_1d(expected.mean_spo2_pct)[i]),
+            high_pct=float(np.atleast_1d(expected.high_spo2_pct)[i]),
+            low_capacity_pct=float(np.atleast_1d(capacity.low_pct)[i]),
+            capacity_pct=float(np.atleast_1d(capacity.mean_pct)[i]),
+            high_capacity_pct=float(np.atleast_1d(capacity.high_pct)[i]),
+            beyond_validity=bool(np.atleast_1d(expected.beyond_validity)[i]),
         )
-    return VenueAir(
-        place=place,
-        track=track,
-        beds=beds,
-        expected_at_track=straight_from_sea_level(track, DAYS_SHOWN),
-        expected_at_beds=straight_from_sea_level(beds, DAYS_SHOWN),
-    )
+        for i in range(at.size)
+    ]
 
 
 def model_pressure_hpa(place: Place) -> float:
