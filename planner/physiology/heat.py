@@ -285,7 +285,7 @@ def heat_balance(
     convection = area_factor * convective * (surface - air)
     radiation = area_factor * radiative * (surface - radiant)
 
-    # Vapour resistance: the garment's at sea level from im less the air layer, scaled; then today's air layer.
+    # Vapour resistance: the garment's at sea level from im, scaled, and today's air layer.
     total_insulation = insulation + 1.0 / (area_factor * (still_convection + radiative))
     total_resistance = total_insulation / (LEWIS_RATIO_K_KPA * permeable)
     air_layer = 1.0 / (LEWIS_RATIO_K_KPA * still_convection * area_factor)
