@@ -11,7 +11,8 @@ import pytest
 
 from planner.errors import InputError, StoreError
 from planner.season.model import Driver, Place
-from planner.services.team import local_instant, removed, save, typed_value
+from planner.services.team import removed, save
+from planner.services.typed import local_instant, typed_value
 from planner.store.store import Store
 
 HOME = Place("Vallmora", "Europe/Madrid", 120.0, 120.0, 41.0, 1.5)

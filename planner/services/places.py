@@ -10,14 +10,14 @@ from typing import Final, Literal, TypeAlias
 
 import numpy as np
 
-from planner.checks import checked
 from planner.errors import InputError
 from planner.physiology.air import site_pressure, station_pressure_from_altimeter_setting_hpa
 from planner.season.exposure import MEASUREMENT_REACH
 from planner.season.model import Place, PressureMeasurement
 from planner.services.air import SiteAir, capacity_there, site_air, straight_from_sea_level
+from planner.services.typed import typed_value
 from planner.store.store import Store
-from planner.units import from_house, to_house
+from planner.units import from_house
 
 PressureKind: TypeAlias = Literal["station pressure", "altimeter setting"]
 
@@ -110,12 +110,11 @@ def typed_pressure(
     (QNH), which is turned back into the station pressure.
     Raises: InputError when the value cannot be the pressure at this place.
     """
-    typed_hpa = to_house("pressure", value, unit)
     if kind == "altimeter setting":
-        setting = float(checked("altimeter_setting_hpa", typed_hpa, f"altimeter setting in {unit}"))
+        setting = typed_value(kind, value, "altimeter_setting_hpa", "pressure", unit)
         pressure_hpa = float(station_pressure_from_altimeter_setting_hpa(setting, place.track_elevation_m))
     else:
-        pressure_hpa = float(checked("pressure_hpa", typed_hpa, f"station pressure in {unit}"))
+        pressure_hpa = typed_value(kind, value, "pressure_hpa", "pressure", unit)
     model_hpa = model_pressure_hpa(place)
     if abs(pressure_hpa / model_hpa - 1.0) > IMPLAUSIBLE_SHARE:
         low, high = (

@@ -1,0 +1,39 @@
+"""What was typed, on its way into the house's units and instants."""
+
+from __future__ import annotations
+
+from datetime import date, datetime, time
+from zoneinfo import ZoneInfo
+
+from planner.checks import QUANTITIES
+from planner.errors import InputError
+from planner.units import from_house, to_house
+
+
+def typed_value(field: str, value: float | None, quantity: str, kind: str, unit: str) -> float:
+    """Return a typed value in the house unit, or refuse it in the unit in which it was typed.
+
+    Parameters: `quantity` is a row of `checks.QUANTITIES` and gives the range; `kind` and `unit` are
+    those of `units.TO_HOUSE`.
+    Raises: InputError naming the field, the value as typed, and the range in the typed unit.
+    """
+    known = QUANTITIES[quantity]
+    wanted = f"{from_house(kind, known.low, unit):.0f} to {from_house(kind, known.high, unit):.0f} {unit}"
+    if value is None:
+        raise InputError(field, "", wanted)
+    in_house = to_house(kind, value, unit)
+    if not known.low <= in_house <= known.high:
+        raise InputError(field, value, wanted)
+    return in_house
+
+
+def local_instant(field: str, day: date, wall: time, zone: str) -> datetime:
+    """Return the UTC instant of a wall-clock time in a zone.
+
+    Raises: InputError when the clocks skip this time on that day.
+    """
+    local = ZoneInfo(zone)
+    instant = datetime.combine(day, wall, local).astimezone(ZoneInfo("UTC"))
+    if instant.astimezone(local).time() != wall:
+        raise InputError(field, f"{day} {wall:%H:%M}", f"a time that the clocks of {zone} show on that day")
+    return instant
