@@ -11,7 +11,7 @@ from typing import Final
 
 from platformdirs import user_data_path
 
-from planner.errors import InputError, StoreError
+from planner.errors import InputError
 from planner.season.model import Driver
 from planner.store.store import Store
 from planner.wording import METRIC, UnitChoice
@@ -19,6 +19,9 @@ from planner.wording import METRIC, UnitChoice
 STORE_VARIABLE: Final = "PLANNER_STORE"
 STORE_FILE: Final = "planner.db"
 FROZEN_CLOCK: Final = "clock_frozen_at"
+BEGUN_EMPTY: Final = "begun without data on"
+LAST_NAME: Final = "name of whoever typed last"
+NAME_UNTIL_GIVEN: Final = "coach"
 LONGEST_NAME: Final = 60
 
 
@@ -33,12 +36,8 @@ def default_store_path() -> Path:
 def open_workspace(path: Path) -> Store:
     """The store at a path, made there together with its folder if need be.
 
-    Raises: StoreError when the folder cannot be made or the file is not ours, or newer than the program.
+    Raises: StoreError when it cannot be made, is another program's file, or is newer than this program.
     """
-    try:
-        path.parent.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise StoreError(f"{path.parent}: the folder cannot be made ({error.strerror})") from None
     return Store.open(path)
 
 
@@ -58,6 +57,31 @@ def is_demo(store: Store) -> bool:
 def is_empty(store: Store) -> bool:
     """Whether there is nobody to look after yet."""
     return not store.all(Driver)
+
+
+def has_begun_empty(store: Store) -> bool:
+    """Whether somebody chose to begin without the demo season."""
+    return store.setting(BEGUN_EMPTY) is not None
+
+
+def mark_begun_empty(store: Store) -> None:
+    """Remember that choice, so that it is not asked again."""
+    store.set_setting(BEGUN_EMPTY, datetime.now(UTC).date().isoformat())
+
+
+def last_name(store: Store) -> str:
+    """Who typed here last."""
+    return store.setting(LAST_NAME) or NAME_UNTIL_GIVEN
+
+
+def remember_name(store: Store, text: str) -> str:
+    """Keep who types here from now on; returns the name, tidied.
+
+    Raises: InputError when it is empty or too long.
+    """
+    name = typed_name(text)
+    store.set_setting(LAST_NAME, name)
+    return name
 
 
 def typed_name(text: str) -> str:
