@@ -319,19 +319,19 @@ def standard_air_density_kg_m3(elevation_m: FloatLike) -> FloatLike:
         1.225
     """
     elevation = checked("elevation_m", elevation_m)
-    kelvin = _standard_temperature_k(elevation)
+    kelvin = SEA_LEVEL_TEMPERATURE_K * _standard_temperature_ratio(elevation)
     density = 100.0 * _standard_pressure_hpa(elevation) / (DRY_AIR_GAS_CONSTANT * kelvin)
     return like(density, elevation_m)
 
 
-def _standard_temperature_k(elevation: FloatArray) -> FloatArray:
-    geopotential = elevation * (EARTH_RADIUS_M / (EARTH_RADIUS_M + elevation))
-    return SEA_LEVEL_TEMPERATURE_K - LAPSE_RATE_K_PER_M * geopotential
+def _standard_temperature_ratio(elevation: FloatArray) -> FloatArray:
+    """Temperature over that at sea level; geopotential height is R h / (R + h), with the constants folded."""
+    fall = LAPSE_RATE_K_PER_M * EARTH_RADIUS_M / SEA_LEVEL_TEMPERATURE_K
+    return 1.0 - fall * (elevation / (EARTH_RADIUS_M + elevation))
 
 
 def _standard_pressure_hpa(elevation: FloatArray) -> FloatArray:
-    ratio = _standard_temperature_k(elevation) / SEA_LEVEL_TEMPERATURE_K
-    return SEA_LEVEL_PRESSURE_HPA * ratio**PRESSURE_EXPONENT
+    return SEA_LEVEL_PRESSURE_HPA * _standard_temperature_ratio(elevation) ** PRESSURE_EXPONENT
 
 
 def _standard_elevation_m(pressure: FloatArray) -> FloatArray:
@@ -353,19 +353,22 @@ def _low_latitude_elevation_m(pressure: FloatArray) -> FloatArray:
 
 
 def _share_by_elevation(elevation: FloatArray) -> FloatArray:
-    return np.clip((elevation - LOW_LATITUDE_FROM_M) / (LOW_LATITUDE_FULL_M - LOW_LATITUDE_FROM_M), 0.0, 1.0)
+    share = (elevation - LOW_LATITUDE_FROM_M) / (LOW_LATITUDE_FULL_M - LOW_LATITUDE_FROM_M)
+    return np.clip(share, 0.0, 1.0)
 
 
 def _share_by_latitude(latitude: FloatArray) -> FloatArray:
-    share = np.clip(
-        (LOW_LATITUDE_NONE_DEG - np.abs(latitude)) / (LOW_LATITUDE_NONE_DEG - LOW_LATITUDE_FULL_DEG), 0.0, 1.0
-    )
-    return np.where(np.isnan(latitude), 0.0, share)
+    share = (LOW_LATITUDE_NONE_DEG - np.abs(latitude)) / (LOW_LATITUDE_NONE_DEG - LOW_LATITUDE_FULL_DEG)
+    # fmax takes the number beside a NaN: a latitude that is not known has no share in the low-latitude model.
+    return np.fmin(np.fmax(share, 0.0), 1.0)
 
 
 def _site_pressure_hpa(elevation: FloatArray, latitude: FloatArray) -> FloatArray:
     standard = _standard_pressure_hpa(elevation)
-    share = _share_by_latitude(latitude) * _share_by_elevation(elevation)
+    by_latitude = _share_by_latitude(latitude)
+    if latitude.ndim == 0 and by_latitude == 0.0:  # spares the second model for a site that has no use for it
+        return standard
+    share = by_latitude * _share_by_elevation(elevation)
     return standard + share * (_low_latitude_pressure_hpa(elevation) - standard)
 
 

@@ -50,8 +50,7 @@ def saturation_pct(
     tension = checked("arterial_po2_mmhg", po2_mmhg, "po2_mmhg")
     acidity = checked("ph", ph)
     temperature = checked("body_temperature_c", body_temperature_c)
-    standard = tension * np.exp(-_log_shift(tension, acidity, temperature))
-    return like(_standard_saturation_pct(standard), po2_mmhg, ph, body_temperature_c)
+    return like(_saturation_pct(tension, acidity, temperature), po2_mmhg, ph, body_temperature_c)
 
 
 def po2_mmhg(
@@ -87,6 +86,10 @@ def po2_mmhg(
     return like(_unshifted(standard, acidity, temperature), saturation_pct, ph, body_temperature_c)
 
 
+def _saturation_pct(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:
+    return _standard_saturation_pct(tension * np.exp(-_log_shift(tension, acidity, temperature)))
+
+
 def _standard_saturation_pct(tension: FloatArray) -> FloatArray:
     content = tension * (tension * tension + LINEAR)
     return 100.0 * content / (content + SCALE)
@@ -99,9 +102,14 @@ def _standard_po2_mmhg(saturation: FloatArray) -> FloatArray:
 
 def _log_shift(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:
     """ln of the tension here over the tension of equal saturation at pH 7.4 and 37 C."""
-    by_ph = (tension / 26.6) ** 0.184 - 2.2
-    by_temperature = 0.058 / ((0.00243 * tension) ** 3.88 + 1.0) + 0.013
-    return by_ph * (acidity - STANDARD_PH) + by_temperature * (temperature - STANDARD_BODY_TEMPERATURE_C)
+    off_ph, off_temperature = acidity - STANDARD_PH, temperature - STANDARD_BODY_TEMPERATURE_C
+    shift = np.zeros(np.broadcast_shapes(acidity.shape, temperature.shape))
+    # Each power costs as much as the rest of the curve: not taken where all blood is at the standard.
+    if off_ph.any():
+        shift = shift + ((tension / 26.6) ** 0.184 - 2.2) * off_ph
+    if off_temperature.any():
+        shift = shift + (0.058 / ((0.00243 * tension) ** 3.88 + 1.0) + 0.013) * off_temperature
+    return shift
 
 
 def _log_shift_slope(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:

@@ -20,6 +20,8 @@ ACCLIMATISED_PACO2_SLOPE_MMHG_PER_KM: Final = 2.5
 # Br J Sports Med 47:i93, published rows; the fit is computed).
 PACO2_TIME_CONSTANT_D: Final = 5.9
 
+RESTING_RESPIRATORY_QUOTIENT: Final = 0.85  # mixed diet (published range 0.8 to 0.85)
+
 # Halvings of -430 to 9000 m that reach the resolution of a double.
 BISECTIONS: Final = 54
 
@@ -53,7 +55,7 @@ def alveolar_po2_mmhg(
     inspired_po2_mmhg: FloatLike,
     paco2_mmhg: FloatLike,
     oxygen_fraction: FloatLike = AIR_OXYGEN_FRACTION,
-    respiratory_quotient: FloatLike = 0.85,
+    respiratory_quotient: FloatLike = RESTING_RESPIRATORY_QUOTIENT,
 ) -> FloatLike:
     """Alveolar oxygen tension by the full alveolar gas equation.
 
@@ -167,7 +169,12 @@ def _alveolar_po2_mmhg(
 
 
 def _paco2_mmhg(elevation: FloatArray, days: FloatArray) -> FloatArray:
-    km = elevation / 1000.0
-    acute = ACUTE_PACO2_INTERCEPT_MMHG - ACUTE_PACO2_SLOPE_MMHG_PER_KM * km
-    acclimatised = ACCLIMATISED_PACO2_INTERCEPT_MMHG - ACCLIMATISED_PACO2_SLOPE_MMHG_PER_KM * km
-    return acclimatised + (acute - acclimatised) * np.exp(-days / PACO2_TIME_CONSTANT_D)
+    # The two lines are joined coefficient by coefficient: one time for many elevations then costs one line.
+    acute = np.exp(-days / PACO2_TIME_CONSTANT_D)
+    intercept = ACCLIMATISED_PACO2_INTERCEPT_MMHG + acute * (
+        ACUTE_PACO2_INTERCEPT_MMHG - ACCLIMATISED_PACO2_INTERCEPT_MMHG
+    )
+    slope_per_km = ACCLIMATISED_PACO2_SLOPE_MMHG_PER_KM + acute * (
+        ACUTE_PACO2_SLOPE_MMHG_PER_KM - ACCLIMATISED_PACO2_SLOPE_MMHG_PER_KM
+    )
+    return np.asarray(intercept - (slope_per_km / 1000.0) * elevation)
