@@ -2,21 +2,34 @@
 
 from __future__ import annotations
 
-import json
 from collections.abc import Sequence
 from datetime import datetime
-from functools import lru_cache
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from sqlalchemy import Boolean, Connection, Float, Integer, Text, select, type_coerce
+from sqlalchemy import Boolean, Connection, Float, Integer, Text, insert, select, type_coerce
 
 from planner.errors import InputError
 from planner.monitoring.model import Reading
 from planner.store import schema
-from planner.store.columns import UtcInstant, Words
+from planner.store.columns import UtcInstant, Words, words
 from planner.store.records import KINDS, Kind, from_json
+
+
+def insert_rows(
+    connection: Connection, kind: Kind, ids: Sequence[int], rows: Sequence[dict[str, Any]]
+) -> None:
+    """Insert rows of a kind's fields. The statement is built once, and only the columns that need it are
+    converted: half the time of handing the rows to the statement builder one by one."""
+    fields = ("id", *kind.fields)
+    statement = str(insert(kind.table).values(dict.fromkeys(fields)).compile(dialect=connection.dialect))
+    columns: list[Sequence[Any]] = [ids]
+    for field in kind.fields:
+        bind = kind.table.c[field].type.dialect_impl(connection.dialect).bind_processor(connection.dialect)
+        values = [row[field] for row in rows]
+        columns.append(values if bind is None else [bind(value) for value in values])
+    connection.exec_driver_sql(statement, list(zip(*columns, strict=True)))
 
 
 def reading_columns(
@@ -59,13 +72,8 @@ def _array(column: Any, values: Sequence[Any]) -> NDArray[Any]:
     if isinstance(column.type, Integer):
         return np.array(values, dtype=np.int64)
     result = np.empty(len(values), dtype=object)
-    result[:] = [_words(value) for value in values] if isinstance(column.type, Words) else values
+    result[:] = [words(value) for value in values] if isinstance(column.type, Words) else values
     return result
-
-
-@lru_cache(maxsize=4096)
-def _words(value: str) -> tuple[str, ...]:
-    return tuple(json.loads(value))
 
 
 def held_before(connection: Connection, kind: Kind, fields: Sequence[str]) -> set[tuple[Any, ...]]:
@@ -83,6 +91,6 @@ def held_before(connection: Connection, kind: Kind, fields: Sequence[str]) -> se
         .where(log.c.kind == kind.name, log.c.action == "change", counts)
     ).scalars()
     for before in changed:
-        values = from_json(kind, before or "{}")
-        held.add(tuple(values[field] for field in fields))
+        values = from_json(kind, before)
+        held.add(tuple(values.get(field) for field in fields))
     return held

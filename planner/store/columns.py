@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from datetime import UTC, datetime, timedelta
+from functools import lru_cache
 
 from sqlalchemy import BigInteger, Text
 from sqlalchemy.engine import Dialect
@@ -38,6 +39,18 @@ class UtcInstant(TypeDecorator[datetime]):
         return None if value is None else EPOCH + timedelta(microseconds=value)
 
 
+@lru_cache(maxsize=4096)
+def written(words: tuple[str, ...]) -> str:
+    """Words as a JSON list; most readings share the same few."""
+    return json.dumps(list(words), ensure_ascii=False)
+
+
+@lru_cache(maxsize=4096)
+def words(text: str) -> tuple[str, ...]:
+    """The words of a JSON list."""
+    return tuple(json.loads(text))
+
+
 class Words(TypeDecorator[tuple[str, ...]]):
     """A tuple of words, kept as a JSON list."""
 
@@ -45,7 +58,7 @@ class Words(TypeDecorator[tuple[str, ...]]):
     cache_ok = True
 
     def process_bind_param(self, value: tuple[str, ...] | None, dialect: Dialect) -> str | None:
-        return None if value is None else json.dumps(list(value), ensure_ascii=False)
+        return None if value is None else written(value)
 
     def process_result_value(self, value: str | None, dialect: Dialect) -> tuple[str, ...] | None:
-        return None if value is None else tuple(json.loads(value))
+        return None if value is None else words(value)

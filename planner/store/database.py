@@ -33,6 +33,7 @@ def create_database_engine(path: Path) -> Engine:
         pool_size=CONNECTIONS_KEPT,
         max_overflow=CONNECTIONS_MORE,
         pool_timeout=BUSY_TIMEOUT_S,
+        hide_parameters=True,  # a health record must not get into a log by way of an error
     )
     event.listen(engine, "connect", _prepare)
     event.listen(engine, "begin", _begin)

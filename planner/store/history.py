@@ -11,7 +11,7 @@ from sqlalchemy import Connection, select
 
 from planner.errors import NotFoundError
 from planner.store import schema
-from planner.store.records import Kind, from_json
+from planner.store.records import Kind, columns, from_json
 
 Action: TypeAlias = Literal["add", "change", "remove", "restore"]
 
@@ -42,28 +42,35 @@ class ChangeSet:
 
 
 def changes_of(connection: Connection, kind: Kind, record_id: int) -> list[Change]:
-    """Every change of a record, oldest first."""
+    """Every change of a record, oldest first. Raises: NotFoundError when there never was such a record."""
+    row = connection.execute(select(*columns(kind)).where(kind.table.c.id == record_id)).one_or_none()
+    if row is None:
+        raise NotFoundError(f"there is no {kind.words} {record_id}")
+    values = dict(zip(kind.fields, row[:-1], strict=True))
     sets, log = schema.change_set, schema.change
     rows = connection.execute(
         select(
-            sets.c.at, sets.c.by, sets.c.why, log.c.why, log.c.action, log.c.before, log.c.after, sets.c.id
+            sets.c.id,
+            sets.c.at,
+            sets.c.by,
+            sets.c.why,
+            log.c.why.label("own_why"),
+            log.c.action,
+            log.c.before,
         )
         .join(sets, sets.c.id == log.c.change_set_id)
         .where(log.c.kind == kind.name, log.c.record_id == record_id)
-        .order_by(log.c.id)
+        .order_by(log.c.id.desc())
     )
-    return [
-        Change(
-            at,
-            by,
-            own_why or why,
-            cast(Action, action),
-            None if before is None else from_json(kind, before),
-            None if after is None else from_json(kind, after),
-            set_id,
-        )
-        for at, by, why, own_why, action, before, after, set_id in rows
-    ]
+    # Walked backwards: `values` is what stood after the change at hand.
+    result: list[Change] = []
+    for set_id, at, by, why, own_why, action, before_text in rows:
+        after = None if action == "remove" else values
+        if action == "change":
+            values = {**values, **from_json(kind, before_text)}
+        before = None if action in ("add", "restore") else values
+        result.append(Change(at, by, own_why or why, cast(Action, action), before, after, set_id))
+    return result[::-1]
 
 
 def change_set(connection: Connection, change_set_id: int) -> ChangeSet:

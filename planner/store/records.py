@@ -69,6 +69,11 @@ class Kind:
         """The name in the log of changes."""
         return self.record.__name__
 
+    @property
+    def words(self) -> str:
+        """The name in messages."""
+        return self.table.name.replace("_", " ")
+
 
 KINDS: dict[type, Kind] = {
     record: Kind(record, table, tuple(f.name for f in fields(record) if f.name != "id"))
@@ -133,7 +138,7 @@ def record_from(record: type[R], row: Iterable[Any]) -> R:
 
 def to_json(values: Mapping[str, Any]) -> str:
     """Fields as one JSON object; instants and dates in ISO 8601."""
-    return json.dumps(values, default=_encoded, ensure_ascii=False, separators=(",", ":"))
+    return json.dumps(values, default=_encoded, ensure_ascii=False)
 
 
 def from_json(kind: Kind, text: str) -> dict[str, Any]:

@@ -101,8 +101,8 @@ change_set = Table(
     Column("undoes", Integer, ForeignKey("change_set.id"), nullable=True),
 )
 
-# `before` and `after` are JSON objects of the record's fields; one of them is null when a record
-# appears (add, restore) or goes (remove).
+# `before` is a JSON object of the record's fields as they stood before an action "change", and null for the
+# others, which change no field. What stood after any action is thus the next `before`, or the record itself.
 change = Table(
     "change",
     metadata,
@@ -112,7 +112,6 @@ change = Table(
     _whole("record_id"),
     _text("action"),
     Column("before", Text, nullable=True),
-    Column("after", Text, nullable=True),
     _text("why"),
     Index("ix_change_record", "record_id", "kind"),
 )
@@ -349,7 +348,8 @@ TABLES: dict[type, Table] = {
 }
 
 # What tells one live record from another: a second one with the same values is refused. The SpO2 is part of
-# a reading's key, since a doubtful reading is repeated within the minute that the clock shows.
+# a reading's key, since a doubtful reading is repeated within the minute that the clock shows. Its index also
+# serves the question for one driver's readings in a span of time.
 UNIQUE: dict[type, tuple[str, ...]] = {
     Place: ("name",),
     Driver: ("name",),

@@ -186,6 +186,16 @@ class Store:
         with self._reading() as connection:
             return history.changes_of(connection, kind_of(kind), id)
 
+    def changed_ids(self, kind: type[R]) -> set[int]:
+        """The ids of the records of a kind that have been corrected at least once."""
+        log = schema.change
+        with self._reading() as connection:
+            return set(
+                connection.execute(
+                    select(log.c.record_id).where(log.c.kind == kind_of(kind).name, log.c.action == "change")
+                ).scalars()
+            )
+
     def change_sets(self, limit: int = 50) -> list[ChangeSet]:
         """The newest change sets, newest first, undone ones and undos included."""
         with self._reading() as connection:
@@ -233,7 +243,7 @@ class Store:
         current = self._current()
         if current is not None:
             _set_setting(current.connection, name, value)
-            current.written = True
+            current.settings_written = True
             return
         with plain_errors(self.path), writing(self._engine) as connection:
             _set_setting(connection, name, value)
@@ -293,9 +303,9 @@ class Store:
                 yield current
             finally:
                 self._thread.change_set = None
-            if current.written:
+            if current.records_written or current.settings_written:
                 _move_version(connection)
-            else:
+            if not current.records_written:
                 connection.execute(delete(schema.change_set).where(schema.change_set.c.id == id))
 
     @contextmanager

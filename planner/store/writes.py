@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
-from sqlalchemy import Column, Connection, func, insert, select, update
+from sqlalchemy import Column, Connection, func, insert, literal, select, update
 from sqlalchemy.exc import IntegrityError
 
 from planner.errors import InputError, NotFoundError, StoreError
 from planner.store import schema
+from planner.store.bulk import insert_rows
 from planner.store.history import Action, ChangeSet, in_force
 from planner.store.records import (
     KIND_BY_NAME,
@@ -24,6 +25,7 @@ from planner.store.records import (
     from_json,
     kind_of,
     plain,
+    record_from,
     to_json,
     validate,
     values_of,
@@ -49,39 +51,40 @@ class OpenChangeSet:
     id: int
     by: str
     at: datetime
-    written: bool = False
+    records_written: bool = False
+    settings_written: bool = False
 
     # Adding -----------------------------------------------------------------------------------------------
 
     def add_all(self, records: Iterable[R], why: str) -> list[R]:
-        """Keep new records and return them with their ids."""
+        """Keep new records and return them with their ids, in the order given."""
         by_kind: dict[type[R], list[R]] = defaultdict(list)
-        order: list[tuple[type[R], int]] = []
+        places: list[tuple[type[R], int]] = []
         for given in records:
             kind_of(type(given))
             record = plain(given)
             validate(record)
             if record.id != 0:
                 raise InputError("id", record.id, "0 for a record that is not stored yet")
-            order.append((type(record), len(by_kind[type(record)])))
-            by_kind[type(record)].append(record)
-        kept = {record: self._add_kind(KINDS[record], group, why) for record, group in by_kind.items()}
-        return [kept[record][position] for record, position in order]
+            group = by_kind[type(record)]
+            places.append((type(record), len(group)))
+            group.append(record)
+        kept = {record: self._add_kind(record, group, why) for record, group in by_kind.items()}
+        return [kept[record][position] for record, position in places]
 
-    def _add_kind(self, kind: Kind, records: Sequence[R], why: str) -> list[R]:
-        values = [values_of(kind, record) for record in records]
-        self._check_references(kind, values)
+    def _add_kind(self, record: type[R], records: Sequence[R], why: str) -> list[R]:
+        kind = KINDS[record]
+        rows = [values_of(kind, each) for each in records]
+        self._check_references(kind, rows)
         # Rows are never deleted, so the ids after the highest one are free as long as the write lock is held.
         highest = self.connection.execute(select(func.coalesce(func.max(kind.table.c.id), 0))).scalar_one()
-        ids = range(highest + 1, highest + 1 + len(records))
+        ids = range(highest + 1, highest + 1 + len(rows))
         try:
-            self.connection.execute(
-                insert(kind.table), [{"id": id, **row} for id, row in zip(ids, values, strict=True)]
-            )
+            insert_rows(self.connection, kind, ids, rows)
         except IntegrityError as error:
-            raise self._why_refused(kind, values, error) from error
-        self._log(kind, "add", [(id, None, row) for id, row in zip(ids, values, strict=True)], why)
-        return [replace(record, id=id) for record, id in zip(records, ids, strict=True)]
+            raise self._why_refused(kind, rows, error) from error
+        self._log_where(kind, "add", kind.table.c.id > highest, why)
+        return [record_from(record, (*row.values(), id)) for row, id in zip(rows, ids, strict=True)]
 
     # Changing, removing, restoring --------------------------------------------------------------------------
 
@@ -92,12 +95,30 @@ class OpenChangeSet:
         validate(record)
         before = self._live(kind, record.id).values
         after = values_of(kind, record)
-        if before == after:
-            return record
-        self._check_references(kind, [after])
-        self._update(kind, record.id, after)
-        self._log(kind, "change", [(record.id, before, after)], why)
+        if before != after:
+            self._check_references(kind, [after])
+            self._change(kind, record.id, before, after, why)
         return record
+
+    def _change(
+        self, kind: Kind, record_id: int, before: Mapping[str, Any], after: Mapping[str, Any], why: str
+    ) -> None:
+        try:
+            self.connection.execute(update(kind.table).where(kind.table.c.id == record_id).values(**after))
+        except IntegrityError as error:
+            raise self._why_refused(kind, [after], error, except_id=record_id) from error
+        self.connection.execute(
+            insert(schema.change),
+            {
+                "change_set_id": self.id,
+                "kind": kind.name,
+                "record_id": record_id,
+                "action": "change",
+                "before": to_json(before),
+                "why": why,
+            },
+        )
+        self.records_written = True
 
     def remove(self, kind: Kind, record_id: int, why: str) -> None:
         """Remove a record and those that belong to it.
@@ -105,59 +126,61 @@ class OpenChangeSet:
         Raises: StoreError while records that do not belong to it refer to it.
         """
         self._live(kind, record_id)
-        going: dict[str, set[int]] = defaultdict(set)
+        going: dict[Kind, set[int]] = defaultdict(set)
         self._gather_belonging(kind, {record_id}, going)
-        for table_name, ids in going.items():
-            self._refuse_while_used(KIND_BY_TABLE[table_name], ids, going)
-        for table_name, ids in going.items():
-            self._set_removed(KIND_BY_TABLE[table_name], ids, why)
+        for each, ids in list(going.items()):
+            self._refuse_while_used(each, ids, going)
+        for each, ids in going.items():
+            self._set_removed(each, ids, why)
 
     def restore(self, kind: Kind, record_id: int, why: str) -> None:
-        """Put back a removed record, and what was removed with it."""
+        """Put back a removed record, and what was removed with it.
+
+        Raises: StoreError when it is not removed, or refers to a record that still is.
+        """
         removed_in = self._state(kind, record_id).removed_in
         if removed_in is None:
-            raise StoreError(f"{kind.name} {record_id} is not removed")
-        self._set_live(kind, {record_id}, why)
-        parents = {record_id}
-        self._restore_belonging(kind, parents, removed_in, why)
-        self._refuse_dangling({kind})
+            raise StoreError(f"{kind.words} {record_id} is not removed")
+        touched: set[Kind] = set()
+        self._restore_with_belonging(kind, {record_id}, removed_in, why, touched)
+        self._refuse_dangling(touched)
 
-    def _gather_belonging(self, kind: Kind, ids: set[int], going: dict[str, set[int]]) -> None:
-        new = ids - going[kind.table.name]
-        if not new:
-            return
-        going[kind.table.name] |= new
+    def _gather_belonging(self, kind: Kind, ids: set[int], going: dict[Kind, set[int]]) -> None:
+        going[kind] |= ids
         for child, column in _referring_to(kind, "CASCADE"):
-            self._gather_belonging(child, self._referring_ids(child, column, new, removed_in=None), going)
+            belonging = self._referring_ids(child, column, ids, removed_in=None) - going[child]
+            if belonging:
+                self._gather_belonging(child, belonging, going)
 
-    def _restore_belonging(self, kind: Kind, ids: set[int], removed_in: int, why: str) -> None:
+    def _restore_with_belonging(
+        self, kind: Kind, ids: set[int], removed_in: int, why: str, touched: set[Kind]
+    ) -> None:
+        self._set_live(kind, ids, why)
+        touched.add(kind)
         for child, column in _referring_to(kind, "CASCADE"):
-            back = self._referring_ids(child, column, ids, removed_in=removed_in)
-            if back:
-                self._set_live(child, back, why)
-                self._restore_belonging(child, back, removed_in, why)
+            belonging = self._referring_ids(child, column, ids, removed_in=removed_in)
+            if belonging:
+                self._restore_with_belonging(child, belonging, removed_in, why, touched)
 
     def _referring_ids(
         self, child: Kind, column: Column[Any], ids: set[int], removed_in: int | None
     ) -> set[int]:
-        found: set[int] = set()
-        for some in _in_portions(ids):
-            found.update(
-                self.connection.execute(
-                    select(child.table.c.id).where(
-                        column.in_(some), child.table.c.removed_in.is_not_distinct_from(removed_in)
-                    )
-                ).scalars()
-            )
-        return found
+        state = child.table.c.removed_in.is_not_distinct_from(removed_in)
+        return {
+            id
+            for some in _in_portions(ids)
+            for id in self.connection.execute(
+                select(child.table.c.id).where(column.in_(some), state)
+            ).scalars()
+        }
 
-    def _refuse_while_used(self, kind: Kind, ids: set[int], going: dict[str, set[int]]) -> None:
+    def _refuse_while_used(self, kind: Kind, ids: set[int], going: dict[Kind, set[int]]) -> None:
         for child, column in _referring_to(kind, "RESTRICT"):
-            using = self._referring_ids(child, column, ids, removed_in=None) - going[child.table.name]
+            using = self._referring_ids(child, column, ids, removed_in=None) - going[child]
             if using:
                 raise StoreError(
-                    f"this {_in_words(kind)} cannot be removed while {len(using)} "
-                    f"{_in_words(child)} record(s) refer to it by {column.name}"
+                    f"this {kind.words} cannot be removed: {_count(len(using), child)} "
+                    f"to it by {column.name}; change or remove them first"
                 )
 
     def _set_removed(self, kind: Kind, ids: Iterable[int], why: str) -> None:
@@ -170,28 +193,13 @@ class OpenChangeSet:
         self, kind: Kind, action: Action, ids: Iterable[int], removed_in: int | None, why: str
     ) -> None:
         for some in _in_portions(ids):
-            states = self._states(kind, some)
+            chosen = kind.table.c.id.in_(some)
             try:
-                self.connection.execute(
-                    update(kind.table).where(kind.table.c.id.in_(some)).values(removed_in=removed_in)
-                )
+                self.connection.execute(update(kind.table).where(chosen).values(removed_in=removed_in))
             except IntegrityError as error:
-                raise self._why_refused(kind, [state.values for state in states.values()], error) from error
-            self._log(
-                kind,
-                action,
-                [
-                    (id, state.values, None) if action == "remove" else (id, None, state.values)
-                    for id, state in states.items()
-                ],
-                why,
-            )
-
-    def _update(self, kind: Kind, record_id: int, values: dict[str, Any]) -> None:
-        try:
-            self.connection.execute(update(kind.table).where(kind.table.c.id == record_id).values(**values))
-        except IntegrityError as error:
-            raise self._why_refused(kind, [values], error, except_id=record_id) from error
+                rows = [state.values for state in self._states(kind, some).values()]
+                raise self._why_refused(kind, rows, error) from error
+            self._log_where(kind, action, chosen, why)
 
     # Undoing ------------------------------------------------------------------------------------------------
 
@@ -200,41 +208,46 @@ class OpenChangeSet:
 
         Raises: StoreError when a change set in force touched one of them since.
         """
+        self._refuse_if_touched_since(target)
+        why = ""
+        first_action, first_values = self._before(target)
+        for (kind, record_id), values in first_values.items():
+            now = self._state(kind, record_id).values
+            before = {**now, **values}
+            if now != before:
+                self._change(kind, record_id, now, before, why)
+        appeared: dict[Kind, set[int]] = defaultdict(set)
+        was_live: dict[Kind, set[int]] = defaultdict(set)
+        for (kind, record_id), action in first_action.items():
+            (appeared if action in ("add", "restore") else was_live)[kind].add(record_id)
+        for kind, ids in appeared.items():
+            self._set_removed(kind, self._ids_where(kind, ids, live=True), why)
+        for kind, ids in was_live.items():
+            self._set_live(kind, self._ids_where(kind, ids, live=False), why)
+        self._refuse_dangling({kind for kind, _ in first_action})
+
+    def _before(
+        self, target: ChangeSet
+    ) -> tuple[dict[tuple[Kind, int], str], dict[tuple[Kind, int], dict[str, Any]]]:
+        """For each record of a change set its first action, and the fields before its first change if any."""
         log = schema.change
-        first: dict[tuple[str, int], tuple[str, str | None]] = {}
+        actions: dict[tuple[Kind, int], str] = {}
+        values: dict[tuple[Kind, int], dict[str, Any]] = {}
         for kind_name, record_id, action, before in self.connection.execute(
             select(log.c.kind, log.c.record_id, log.c.action, log.c.before)
             .where(log.c.change_set_id == target.id)
             .order_by(log.c.id)
         ):
-            first.setdefault((kind_name, record_id), (action, before))
-        self._refuse_if_touched_since(target)
-        why = f"undo of change set {target.id}"
-        remove: dict[Kind, list[int]] = defaultdict(list)
-        for (kind_name, record_id), (action, before) in first.items():
-            kind = KIND_BY_NAME[kind_name]
-            if action in ("add", "restore"):
-                remove[kind].append(record_id)
-            else:
-                self._put_back(kind, record_id, from_json(kind, before or "{}"), why)
-        for kind, ids in remove.items():
-            live = [id for some in _in_portions(ids) for id in self._live_ids(kind, some)]
-            self._set_removed(kind, live, why)
-        self._refuse_dangling({KIND_BY_NAME[kind_name] for kind_name, _ in first})
-
-    def _put_back(self, kind: Kind, record_id: int, values: dict[str, Any], why: str) -> None:
-        now = self._state(kind, record_id)
-        if now.values != values:
-            self._update(kind, record_id, values)
-        if now.removed_in is not None:
-            self._set_live(kind, [record_id], why)
-        elif now.values != values:
-            self._log(kind, "change", [(record_id, now.values, values)], why)
+            key = (KIND_BY_NAME[kind_name], record_id)
+            actions.setdefault(key, action)
+            if action == "change" and key not in values:
+                values[key] = from_json(key[0], before)
+        return actions, values
 
     def _refuse_if_touched_since(self, target: ChangeSet) -> None:
         log, sets = schema.change, schema.change_set
         touched = select(log.c.kind, log.c.record_id).where(log.c.change_set_id == target.id).subquery()
-        newer = self.connection.execute(
+        rows = self.connection.execute(
             select(sets.c.id, sets.c.at, sets.c.by, sets.c.why, sets.c.undoes)
             .join(log, log.c.change_set_id == sets.c.id)
             .join(touched, (touched.c.record_id == log.c.record_id) & (touched.c.kind == log.c.kind))
@@ -242,20 +255,21 @@ class OpenChangeSet:
             .distinct()
             .order_by(sets.c.id.desc())
         )
-        newer_sets = [ChangeSet(*row) for row in newer]
-        cancelled = {each.id for each in newer_sets}
-        for each in in_force(newer_sets):
+        newer = [ChangeSet(*row) for row in rows]
+        newer_ids = {each.id for each in newer}
+        for each in in_force(newer):
             if each.undoes == target.id:
                 raise StoreError(f"change set {target.id} has been undone already")
-            if each.undoes not in cancelled:
+            # An undo of a newer change set only takes that one out of the way.
+            if each.undoes not in newer_ids:
                 raise StoreError(
                     f"change set {target.id} cannot be undone: {each.by} changed the same record "
                     f"on {each.at:%Y-%m-%d at %H:%M} UTC (change set {each.id}); undo that first"
                 )
 
     def _refuse_dangling(self, kinds: set[Kind]) -> None:
-        for problem in dangling(self.connection, {kind.table.name for kind in kinds}):
-            raise StoreError(f"this would leave {problem}")
+        for problem in dangling(self.connection, kinds):
+            raise StoreError(f"this cannot be done: it would leave {problem}")
 
     # Looking ------------------------------------------------------------------------------------------------
 
@@ -268,42 +282,42 @@ class OpenChangeSet:
     def _state(self, kind: Kind, record_id: int) -> _State:
         states = self._states(kind, [record_id])
         if record_id not in states:
-            raise NotFoundError(f"there is no {_in_words(kind)} {record_id}")
+            raise NotFoundError(f"there is no {kind.words} {record_id}")
         return states[record_id]
 
     def _live(self, kind: Kind, record_id: int) -> _State:
         state = self._state(kind, record_id)
         if state.removed_in is not None:
-            raise NotFoundError(f"{_in_words(kind)} {record_id} has been removed; restore it first")
+            raise NotFoundError(f"{kind.words} {record_id} has been removed; restore it first")
         return state
 
-    def _live_ids(self, kind: Kind, ids: Iterable[int]) -> set[int]:
-        return set(
-            self.connection.execute(
-                select(kind.table.c.id).where(
-                    kind.table.c.id.in_(list(ids)), kind.table.c.removed_in.is_(None)
-                )
+    def _ids_where(self, kind: Kind, ids: Iterable[int], *, live: bool) -> set[int]:
+        removed_in = kind.table.c.removed_in
+        state = removed_in.is_(None) if live else removed_in.is_not(None)
+        return {
+            id
+            for some in _in_portions(ids)
+            for id in self.connection.execute(
+                select(kind.table.c.id).where(kind.table.c.id.in_(some), state)
             ).scalars()
-        )
+        }
 
-    def _check_references(self, kind: Kind, values: Sequence[dict[str, Any]]) -> None:
+    def _check_references(self, kind: Kind, rows: Sequence[Mapping[str, Any]]) -> None:
         for field in kind.fields:
             for key in kind.table.c[field].foreign_keys:
-                wanted = {row[field] for row in values} - {None}
                 parent = KIND_BY_TABLE[key.column.table.name]
-                live: set[int] = set()
-                for some in _in_portions(wanted):
-                    live |= self._live_ids(parent, some)
-                if wanted - live:
-                    raise InputError(field, min(wanted - live), f"the id of a stored {_in_words(parent)}")
+                wanted = {row[field] for row in rows} - {None}
+                missing = wanted - self._ids_where(parent, wanted, live=True)
+                if missing:
+                    raise InputError(field, min(missing), f"the id of a stored {parent.words}")
 
     def _why_refused(
-        self, kind: Kind, values: Sequence[dict[str, Any]], error: IntegrityError, except_id: int = 0
+        self, kind: Kind, rows: Sequence[Mapping[str, Any]], error: IntegrityError, except_id: int = 0
     ) -> Exception:
         """Which record is there already; looked for only after the database refused."""
         unique = schema.UNIQUE.get(kind.record, ())
         seen: set[tuple[object, ...]] = set()
-        for row in values if unique else ():
+        for row in rows if unique else ():
             key = tuple(row[field] for field in unique)
             there = self.connection.execute(
                 select(kind.table.c.id).where(
@@ -314,71 +328,48 @@ class OpenChangeSet:
             ).first()
             if there is not None or key in seen:
                 shown = ", ".join(str(value) for value in key)
-                return InputError(
-                    unique[-1], shown, f"a {_in_words(kind)} that is not there yet (by {', '.join(unique)})"
-                )
+                return InputError(", ".join(unique), shown, f"a {kind.words} that is not there already")
             seen.add(key)
-        return StoreError(f"the database refused this {_in_words(kind)} ({error.orig})")
+        return StoreError(f"the database refused this {kind.words} ({error.orig})")
 
-    def _log(
-        self,
-        kind: Kind,
-        action: Action,
-        changed: Sequence[tuple[int, dict[str, Any] | None, dict[str, Any] | None]],
-        why: str,
-    ) -> None:
-        if not changed:
-            return
-        self.written = True
+    def _log_where(self, kind: Kind, action: Action, chosen: Any, why: str) -> None:
+        """Log an action that changes no field, for every record that is chosen."""
+        log = schema.change
+        given = [literal(value) for value in (self.id, kind.name, action, why)]
         self.connection.execute(
-            insert(schema.change),
-            [
-                {
-                    "change_set_id": self.id,
-                    "kind": kind.name,
-                    "record_id": record_id,
-                    "action": action,
-                    "before": None if before is None else to_json(before),
-                    "after": None if after is None else to_json(after),
-                    "why": why,
-                }
-                for record_id, before, after in changed
-            ],
+            insert(log).from_select(
+                ["change_set_id", "kind", "action", "why", "record_id"],
+                select(*given, kind.table.c.id).where(chosen).order_by(kind.table.c.id),
+            )
         )
+        self.records_written = True
 
 
-def dangling(connection: Connection, tables: set[str] | None = None) -> list[str]:
-    """Live records that refer to removed ones, in words; only references from or to `tables` when given."""
+def dangling(connection: Connection, kinds: set[Kind] | None = None) -> list[str]:
+    """Live records that refer to removed ones, in words; only references from or to `kinds` when given."""
     result = []
-    for child in KINDS.values():
-        for column in child.table.c:
-            for key in column.foreign_keys:
-                parent = KIND_BY_TABLE.get(key.column.table.name)
-                if parent is None:
-                    continue
-                if tables is not None and not tables & {child.table.name, parent.table.name}:
-                    continue
-                parent_table = parent.table.alias()
-                count = connection.execute(
-                    select(func.count())
-                    .select_from(child.table.join(parent_table, column == parent_table.c.id))
-                    .where(child.table.c.removed_in.is_(None), parent_table.c.removed_in.is_not(None))
-                ).scalar_one()
-                if count:
-                    result.append(
-                        f"{count} {_in_words(child)} record(s) whose {column.name} "
-                        f"names a removed {_in_words(parent)}"
-                    )
+    for parent in KINDS.values():
+        for child, column in _referring_to(parent):
+            if kinds is not None and not kinds & {child, parent}:
+                continue
+            of_parent = parent.table.alias()
+            count = connection.execute(
+                select(func.count())
+                .select_from(child.table.join(of_parent, column == of_parent.c.id))
+                .where(child.table.c.removed_in.is_(None), of_parent.c.removed_in.is_not(None))
+            ).scalar_one()
+            if count:
+                result.append(f"{_count(count, child)} to a removed {parent.words} by {column.name}")
     return result
 
 
-def _referring_to(kind: Kind, rule: str) -> list[tuple[Kind, Column[Any]]]:
+def _referring_to(kind: Kind, rule: str | None = None) -> list[tuple[Kind, Column[Any]]]:
     return [
         (child, column)
         for child in KINDS.values()
         for column in child.table.c
         for key in column.foreign_keys
-        if key.column.table is kind.table and key.ondelete == rule
+        if key.column.table is kind.table and rule in (None, key.ondelete)
     ]
 
 
@@ -388,5 +379,5 @@ def _in_portions(ids: Iterable[int]) -> Iterable[list[int]]:
         yield ordered[start : start + IDS_PER_STATEMENT]
 
 
-def _in_words(kind: Kind) -> str:
-    return kind.table.name.replace("_", " ")
+def _count(count: int, kind: Kind) -> str:
+    return f"1 {kind.words} refers" if count == 1 else f"{count} {kind.words} records refer"
