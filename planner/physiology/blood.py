@@ -40,7 +40,8 @@ def saturation_pct(
     Raises:
         InputError: an input out of range.
     Valid:
-        Normal adult haemoglobin without carbon monoxide; stated to +-0.55 points at pH 7.4 and 37 C.
+        Normal adult haemoglobin without carbon monoxide; stated to +-0.55 points at pH 7.4 and 37 C. The
+        temperature term is that of a closed sample, whose pH falls as it warms: ph is the value at 37 C.
     Source:
         Severinghaus 1979, J Appl Physiol 46:599 (published).
     Example:

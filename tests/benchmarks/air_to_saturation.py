@@ -13,7 +13,7 @@ from statistics import median
 import ambiance
 import numpy as np
 
-from planner.physiology.air import site_pressure
+from planner.physiology.air import standard_pressure_hpa
 from planner.physiology.blood import saturation_pct
 from planner.physiology.chain import (
     RESTING_ALVEOLAR_ARTERIAL_DIFFERENCE_MMHG,
@@ -28,7 +28,7 @@ TARGET_RATIO = 8.0
 
 def one_after_the_other(elevation_m: np.ndarray) -> np.ndarray:
     """The same chain by the guarded public functions, each over all elements at once."""
-    inspired = inspired_po2_mmhg(site_pressure(elevation_m).pressure_hpa)
+    inspired = inspired_po2_mmhg(standard_pressure_hpa(elevation_m))
     alveolar = alveolar_po2_mmhg(inspired, paco2_mmhg(elevation_m, 0.0))
     return saturation_pct(np.maximum(alveolar - RESTING_ALVEOLAR_ARTERIAL_DIFFERENCE_MMHG, 0.0))
 
