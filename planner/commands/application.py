@@ -12,20 +12,21 @@ from planner.errors import InputError
 
 PACKAGE = Path(__file__).resolve().parents[1]
 DEFAULT_PORT = 8501
+# Who may reach the server and what leaves it. The rest of the file is looks: the file itself is enough there.
+SAFEGUARDED = ("server", "browser", "client")
 
 
 def settings_as_flags(config: Path) -> list[str]:
-    """Return the settings of a Streamlit configuration file as command-line flags.
+    """Return the settings in `SAFEGUARDED` of a Streamlit configuration file as command-line flags.
 
     Flags win over every configuration file and environment variable, so a file that lies in the
     working folder or in the user's home can neither open the server to the network nor switch
     telemetry on.
     """
     flags: list[str] = []
-    for section, entries in tomllib.loads(config.read_text(encoding="utf-8")).items():
-        for key, value in entries.items():
-            if isinstance(value, dict):
-                continue  # a nested table (theme.light) is looks only: the file itself is enough for it
+    settings = tomllib.loads(config.read_text(encoding="utf-8"))
+    for section in SAFEGUARDED:
+        for key, value in settings[section].items():
             for each in value if isinstance(value, list) else [value]:
                 text = str(each).lower() if isinstance(each, bool) else str(each)
                 flags += [f"--{section}.{key}", text]

@@ -13,7 +13,7 @@ import numpy as np
 from planner.errors import InputError
 from planner.physiology.air import site_pressure, station_pressure_from_altimeter_setting_hpa
 from planner.season.exposure import MEASUREMENT_REACH
-from planner.season.model import Place, PressureMeasurement
+from planner.season.model import Place, PressureMeasurement, Round, Session
 from planner.services.air import SiteAir, capacity_there, site_air, straight_from_sea_level
 from planner.services.typed import typed_value
 from planner.store.store import Store
@@ -146,3 +146,15 @@ def pressure_in_force(history: list[PressureMeasurement], at: datetime) -> Press
     if nearest is None or abs(nearest.measured_at - at) >= MEASUREMENT_REACH:
         return None
     return nearest
+
+
+def place_to_show(store: Store, known: Sequence[Place], at: datetime) -> Place:
+    """Return the place of the round that is on or comes next, or the first of those known."""
+    coming = sorted((s for s in store.all(Session) if s.ends_at > at), key=lambda each: each.starts_at)
+    rounds = {each.id: each for each in store.all(Round)}
+    by_id = {place.id: place for place in known}
+    for session in coming:
+        place = by_id.get(rounds[session.round_id].place_id)
+        if place is not None:
+            return place
+    return known[0]

@@ -1,0 +1,108 @@
+"""The Places page: it answers in its first line, shows what a typed pressure changes, keeps it on request."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from datetime import UTC, datetime
+from pathlib import Path
+
+import pytest
+import streamlit as st
+from streamlit.testing.v1 import AppTest
+
+from planner.season.model import Driver, Place, PressureMeasurement
+from planner.store.store import Store
+
+PAGE = Path(__file__).parents[1] / "pages" / "places.py"
+NOW = datetime(2026, 5, 14, 6, tzinfo=UTC)
+
+
+@pytest.fixture
+def store(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Store]:
+    st.cache_resource.clear()
+    st.cache_data.clear()
+    monkeypatch.setenv("PLANNER_STORE", str(tmp_path / "planner.db"))
+    opened = Store.open(tmp_path / "planner.db")
+    opened.set_setting("clock_frozen_at", NOW.isoformat())
+    yield opened
+    opened.close()
+
+
+@pytest.fixture
+def high(store: Store) -> Place:
+    home = store.add(Place("Vallmora", "Europe/Madrid", 100.0, 100.0, 41.0, 1.5), by="coach")
+    store.add(Driver("Ines Corvo", "woman", home.id, 60.0, 168.0), by="coach")
+    return store.add(Place("Alto Cerro", "America/Bogota", 2240.0, 2000.0, 19.0, -75.0), by="coach")
+
+
+def run() -> AppTest:
+    at = AppTest.from_file(str(PAGE), default_timeout=20)
+    at.run()
+    assert not at.exception
+    return at
+
+
+def texts(at: AppTest) -> str:
+    return " ".join(str(element.proto.body) for element in at.get("html"))
+
+
+def test_an_empty_store_is_offered_a_start(store: Store) -> None:
+    store.set_setting("clock_frozen_at", None)
+    assert "No drivers yet" in texts(run())
+
+
+def test_the_first_line_answers(high: Place) -> None:
+    shown = texts(run())
+    assert "Alto Cerro: 783" in shown  # computed: West 1996, 783.46 hPa
+    assert "of the oxygen at sea level" in shown
+    assert "low latitudes (West 1996)" in shown
+    assert "On arrival" in shown
+    assert "Day 14" in shown
+    assert "nan" not in shown
+    assert "None" not in shown
+
+
+def test_a_typed_pressure_shows_what_it_changes_and_is_kept_only_on_the_button(
+    store: Store, high: Place
+) -> None:
+    at = run()
+    at.number_input[0].set_value(770.0).run()
+    assert not at.exception
+    assert "with what you typed" in texts(at)
+    assert store.all(PressureMeasurement) == []
+    [keep] = [button for button in at.button if button.label == "Keep this pressure"]
+    keep.click().run()
+    assert not at.exception
+    [kept] = store.all(PressureMeasurement)
+    assert (kept.place_id, kept.pressure_hpa, kept.measured_at) == (high.id, 770.0, NOW)
+    assert "Pressure measured at the track" in texts(at)
+
+    [back] = [button for button in at.button if button.label == "Take back the newest"]
+    back.click().run()
+    assert not at.exception
+    assert store.all(PressureMeasurement) == []
+    assert "low latitudes (West 1996)" in texts(at)
+
+
+def test_an_impossible_pressure_is_refused_and_stays_typed(store: Store, high: Place) -> None:
+    at = run()
+    at.number_input[0].set_value(1013.0).run()
+    assert not at.exception
+    assert len(at.error) == 1
+    assert "station pressure" in at.error[0].value
+    assert at.number_input[0].value == 1013.0
+    assert "Keep this pressure" not in [button.label for button in at.button]
+    assert store.all(PressureMeasurement) == []
+
+
+def test_the_other_units_are_used_where_they_were_chosen(store: Store, high: Place) -> None:
+    from planner.services.workspace import choose_units, last_name
+    from planner.wording import UnitChoice
+
+    choose_units(store, last_name(store), UnitChoice(elevation="ft", pressure="mmHg"))
+    at = run()
+    # computed: 2240 m / 0.3048; 783.5 hPa / 1.33322
+    assert "7\u2009349\u00a0ft" in texts(at)
+    assert "588\u00a0mmHg" in texts(at)
+    at.number_input[0].set_value(585.0).run()
+    assert "with what you typed" in texts(at)
