@@ -118,11 +118,8 @@ def track_days(
 
 def where_is(driver: Driver, at: datetime, stays: Iterable[Stay], legs: Iterable[Leg]) -> Stay | Leg | None:
     """The stay or leg that holds the driver at an instant; at the moment of a change, the one that begins."""
-    holding = [
-        entry
-        for entry in (*stays, *legs)
-        if entry.driver_id == driver.id and _starts_at(entry) <= at < _ends_at(entry)
-    ]
+    everybody: list[Stay | Leg] = [*stays, *legs]
+    holding = [e for e in everybody if e.driver_id == driver.id and _starts_at(e) <= at < _ends_at(e)]
     return max(holding, key=_starts_at, default=None)
 
 
