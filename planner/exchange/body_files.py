@@ -81,7 +81,7 @@ SICK_PERIODS: Final = FileKind(
     take=_take_sick_period,
     show=_show_sick_period,
     problems=monitoring_problems,
-    key=lambda period: (period.driver_id, period.starts_at),
+    key_fields=("driver_id", "starts_at"),
     compared=("ends_at",),
 )
 
@@ -120,7 +120,7 @@ NOTICES: Final = FileKind(
     take=_take_notice,
     show=_show_notice,
     problems=monitoring_problems,
-    key=lambda notice: (notice.driver_id, notice.at, notice.kind, notice.text),
+    key_fields=("driver_id", "at", "kind", "text"),
 )
 
 
@@ -162,7 +162,7 @@ COCKPIT_CONDITIONS: Final = FileKind(
     take=_take_conditions,
     show=_show_conditions,
     problems=hydration_problems,
-    key=lambda conditions: conditions.session_id,
+    key_fields=("session_id",),
     compared=("air_temperature_c", "radiant_temperature_c", "humidity_pct", "air_speed_m_s"),
 )
 
@@ -242,7 +242,7 @@ WEIGHINGS: Final = FileKind(
     take=_take_weighing,
     show=_show_weighing,
     problems=hydration_problems,
-    key=lambda weighing: (weighing.driver_id, weighing.starts_at),
+    key_fields=("driver_id", "starts_at"),
     compared=("ends_at", "mass_before_kg", "mass_after_kg", "drink_ml"),
 )
 
@@ -287,6 +287,6 @@ MORNING_MARKS: Final = FileKind(
     take=_take_mark,
     show=_show_mark,
     problems=hydration_problems,
-    key=lambda mark: (mark.driver_id, mark.at),
+    key_fields=("driver_id", "at"),
     compared=("mass_kg", "urine_colour", "urine_specific_gravity"),
 )

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Hashable, Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from typing import Generic, TypeVar
 
@@ -24,7 +24,7 @@ class FileKind(Generic[R]):
     take: Callable[[Line, FileContext], R]
     show: Callable[[R, FileContext], Mapping[str, Cell]]
     problems: Callable[[R], list[InputError]]  # what the domain says against a record
-    key: Callable[[R], Hashable]  # two records with the same key are the same thing
+    key_fields: tuple[str, ...]  # two records that agree in these fields are the same thing
     compared: tuple[str, ...] = ()  # columns in which two records of the same key must agree
 
 

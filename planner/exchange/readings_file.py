@@ -92,7 +92,7 @@ READINGS: Final = FileKind(
     show=_show,
     problems=problems,
     # The value is part of the key: a doubtful reading is repeated within the minute that the clock shows.
-    key=lambda each: (each.driver_id, each.taken_at, each.wakefulness, each.device, each.spo2_pct),
+    key_fields=("driver_id", "taken_at", "wakefulness", "device", "spo2_pct"),
 )
 
 

@@ -82,7 +82,7 @@ PLACES: Final = FileKind(
     take=_take_place,
     show=_show_place,
     problems=problems,
-    key=lambda place: place.name,
+    key_fields=("name",),
     compared=("zone", "track_elevation_m", "bed_elevation_m", "latitude_deg", "longitude_deg"),
 )
 
@@ -141,7 +141,7 @@ DRIVERS: Final = FileKind(
     take=_take_driver,
     show=_show_driver,
     problems=problems,
-    key=lambda driver: driver.name,
+    key_fields=("name",),
     compared=("sex", "home_place", "mass_kg", "height_cm"),
 )
 
@@ -169,7 +169,7 @@ ROUNDS: Final = FileKind(
     take=_take_round,
     show=_show_round,
     problems=problems,
-    key=lambda each: each.name,
+    key_fields=("name",),
     compared=("number", "place"),
 )
 
@@ -210,7 +210,7 @@ SESSIONS: Final = FileKind(
     take=_take_session,
     show=_show_session,
     problems=problems,
-    key=lambda session: (session.round_id, session.name),
+    key_fields=("round_id", "name"),
     compared=("kind", "starts_at", "ends_at"),
 )
 
@@ -249,7 +249,7 @@ COMMITMENTS: Final = FileKind(
     take=_take_commitment,
     show=_show_commitment,
     problems=problems,
-    key=lambda each: (each.driver_id, each.starts_at, each.name),
+    key_fields=("driver_id", "starts_at", "name"),
     compared=("place", "ends_at"),
 )
 
@@ -294,7 +294,7 @@ STAYS: Final = FileKind(
     take=_take_stay,
     show=_show_stay,
     problems=problems,
-    key=lambda stay: (stay.driver_id, stay.arrive_at),
+    key_fields=("driver_id", "arrive_at"),
     compared=("place", "depart_at"),
 )
 
@@ -340,7 +340,7 @@ LEGS: Final = FileKind(
     take=_take_leg,
     show=_show_leg,
     problems=problems,
-    key=lambda leg: (leg.driver_id, leg.depart_at),
+    key_fields=("driver_id", "depart_at"),
     compared=("from_place", "to_place", "arrive_at"),
 )
 
@@ -376,6 +376,6 @@ PRESSURES: Final = FileKind(
     take=_take_pressure,
     show=_show_pressure,
     problems=problems,
-    key=lambda each: (each.place_id, each.measured_at),
+    key_fields=("place_id", "measured_at"),
     compared=("pressure_hpa",),
 )
