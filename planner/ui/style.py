@@ -6,6 +6,7 @@ from typing import Final
 
 from planner.charts.strip import STRIP_STYLE
 from planner.charts.theme import style_variables
+from planner.ui.tables import TABLE_STYLE
 
 _PAGE: Final = """
 .stMainBlockContainer{max-width:72rem;padding-left:1.25rem;padding-right:1.25rem}
@@ -45,4 +46,4 @@ button[data-testid="stBaseButton-tertiary"]{color:var(--accent)}
 
 def style_sheet() -> str:
     """The whole style as one <style> element."""
-    return f"<style>:root,.stApp{{{style_variables()}}}{_PAGE}{STRIP_STYLE}</style>"
+    return f"<style>:root,.stApp{{{style_variables()}}}{_PAGE}{TABLE_STYLE}{STRIP_STYLE}</style>"
