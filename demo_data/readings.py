@@ -57,10 +57,11 @@ ILL_TODAY: Final = 2
 ILL_IN_MAY: Final = 5
 NOT_YET_MEASURED: Final = 8
 MISTYPED: Final = (6, date(2026, 4, 25), 69.0)  # 96 was read, 69 typed
-# Points that the readings of a morning lie away from what the person would show otherwise.
+STORY_SCATTER: Final = 0.1  # chance has less of a say where the season tells something
+# Points that a morning's reading lies away from what the person would show otherwise.
 SHIFT_PCT: Final = {
-    (DOES_NOT_ADAPT, TODAY - timedelta(days=1)): -6.0,
-    (DOES_NOT_ADAPT, TODAY): -6.0,
+    (DOES_NOT_ADAPT, TODAY - timedelta(days=1)): -4.4,
+    (DOES_NOT_ADAPT, TODAY): -4.8,
     (COLD_HAND_TODAY, TODAY): -6.0,
     (ILL_TODAY, TODAY - timedelta(days=1)): -1.0,
     (ILL_TODAY, TODAY): -1.5,
@@ -248,9 +249,10 @@ def _drawn_spo2_pct(
         history, hours, wakefulness=wakefulness, person=PersonPosterior(new_device=latents)
     )
     scatter_pct = float(np.hypot(expected.day_to_day_sd_pct, expected.oximeter_sd_pct))
-    drawn = (
-        float(expected.mean_spo2_pct) + SHIFT_PCT.get((driver.id, day), 0.0) + random.normal() * scatter_pct
-    )
+    if day == TODAY or (driver.id, day) in SHIFT_PCT:
+        scatter_pct *= STORY_SCATTER
+    shift_pct = SHIFT_PCT.get((driver.id, day), 0.0) if wakefulness == "awake" else 0.0
+    drawn = float(expected.mean_spo2_pct) + shift_pct + random.normal() * scatter_pct
     return float(min(round(drawn), FULL))
 
 
