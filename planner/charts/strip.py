@@ -7,6 +7,7 @@ millisecond each and the browser nothing, and they follow the reader's theme by 
 from __future__ import annotations
 
 import html
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
@@ -19,7 +20,7 @@ TOP_PCT: Final = 100.5
 LEAST_SPAN_PCT: Final = 8.0  # so that a point of saturation never fills the strip
 
 STRIP_STYLE: Final = """
-.p-strip{position:relative;height:3.25rem;border-bottom:1px solid var(--rule)}
+.p-strip{position:relative;height:3.5rem;border-bottom:1px solid var(--rule)}
 .p-strip i{position:absolute;display:block}
 .p-strip .band{background:var(--own-range);border-top:1px solid var(--own-range-line);
  border-bottom:1px solid var(--own-range-line);box-sizing:border-box}
@@ -49,11 +50,14 @@ class _Scale:
         return 100.0 * min(max(share, 0.0), 1.0)
 
 
-def strip(mornings: Sequence[Morning]) -> str:
-    """The mornings, oldest first, as HTML with a text alternative and a line of words on every mark."""
+def strip(mornings: Sequence[Morning], low_pct: float | None = None) -> str:
+    """The mornings, oldest first, as HTML with a text alternative and a line of words on every mark.
+
+    `low_pct` is the saturation at the bottom, the same for all strips that are to be compared.
+    """
     if not mornings:
         return ""
-    scale = _Scale(_floor_pct(mornings))
+    scale = _Scale(floor_pct(mornings) if low_pct is None else low_pct)
     width = 100.0 / len(mornings)
     parts: list[str] = []
     for i, morning in enumerate(mornings):
@@ -63,7 +67,8 @@ def strip(mornings: Sequence[Morning]) -> str:
     return (
         f'<div class="p-strip" role="img" aria-label="{html.escape(in_words(mornings))}">'
         f"{''.join(parts)}</div>"
-        f'<div class="p-axis"><span>{day(first)}</span><span>{day(last)}</span></div>'
+        f'<div class="p-axis"><span>{day(first)}</span>'
+        f"<span>{per_cent_range(scale.low_pct, 100.0)}</span><span>{day(last)}</span></div>"
     )
 
 
@@ -76,10 +81,11 @@ def in_words(mornings: Sequence[Morning]) -> str:
     return f"SpO2 of the last {len(mornings)} mornings, oldest first: {values}."
 
 
-def _floor_pct(mornings: Sequence[Morning]) -> float:
+def floor_pct(mornings: Sequence[Morning]) -> float:
+    """A whole saturation just below everything that these mornings hold."""
     lows = [j.reading.spo2_pct for m in mornings for j in m.readings]
     lows += [m.expected.low_pct for m in mornings]
-    return min(min(lows) - 1.5, TOP_PCT - LEAST_SPAN_PCT)
+    return float(math.floor(min(min(lows, default=100.0) - 1.0, TOP_PCT - LEAST_SPAN_PCT)))
 
 
 def _band(morning: Morning, left: float, width: float, scale: _Scale) -> str:

@@ -217,9 +217,10 @@ def shown(sample: Sample) -> str:
     value, expected = sample.reading.spo2_pct, sample.expected
     decimals = 1 if _rounding_hides(value, expected) else 0
     limits = per_cent_range(expected.low_pct, expected.high_pct, decimals)
+    asleep = " asleep" if sample.reading.wakefulness == "asleep" else ""
     words = f" {expected.words}" if expected.words else ""
     model = " (beyond the model's range)" if expected.beyond_validity else ""
-    return f"{per_cent(value, decimals)}, expected {limits}{words}{model}"
+    return f"{per_cent(value, decimals)}{asleep}, expected {limits}{words}{model}"
 
 
 def _rounding_hides(value: float, expected: ExpectedRange) -> bool:
@@ -234,4 +235,6 @@ def _when(stated: Sample, sample: Sample) -> str:
     if not gap:
         return ""
     minutes = gap / timedelta(minutes=1)
+    if minutes < 1.0:
+        return " just before"
     return f" {number(minutes)} min before" if minutes < 90.0 else f" {number(minutes / 60.0)} h before"

@@ -14,7 +14,11 @@ _PAGE: Final = """
 .stApp [data-testid="stHtml"]{overflow-wrap:anywhere}
 button[data-testid^="stBaseButton-primary"],
 button[data-testid^="stBaseButton-primary"] *{color:var(--on-accent)}
-button[data-testid="stBaseButton-tertiary"]{color:var(--accent)}
+button[data-testid="stBaseButton-tertiary"],
+[data-testid="stPopover"] button[kind="tertiary"]{color:var(--accent)}
+[class*="st-key-p-card-"]{padding:.6rem .9rem .5rem}
+[class*="st-key-p-acts-"]{gap:0}
+[class*="st-key-p-acts-"] button{min-height:1.75rem;padding:0}
 [data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
 .p-over{font-size:.8125rem;color:var(--muted);letter-spacing:.02em;line-height:1.4}
 .p-answer{font-size:1.375rem;font-weight:600;line-height:1.3;margin:0;padding:0}
@@ -29,13 +33,15 @@ button[data-testid="stBaseButton-tertiary"]{color:var(--accent)}
 .p-out.not-measured{color:var(--muted);font-weight:500}
 .p-out.urgent{color:var(--urgent);background:var(--urgent-ground);font-weight:700;padding:.1rem .5rem;
  border-radius:.25rem}
-.p-row{display:grid;grid-template-columns:7rem 8.5rem minmax(0,1fr) 13rem;column-gap:1rem;align-items:start}
+.p-row{display:grid;grid-template-columns:9rem 9rem minmax(0,1fr) 14rem;column-gap:1rem;align-items:start}
 .p-name{font-weight:600;line-height:1.35}
 .p-value{font-size:1.375rem;font-weight:600;line-height:1.2}
 .p-small{font-size:.8125rem;color:var(--muted);line-height:1.4}
 .p-why{font-size:.9375rem;line-height:1.4}
 .p-do{font-weight:600}
 @media (max-width:640px){
+ [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem}
+ [class*="st-key-p-acts-"] button{min-height:2.75rem}
  .stMainBlockContainer{padding-left:.875rem;padding-right:.875rem}
  .p-row{grid-template-columns:minmax(0,1fr) auto;row-gap:.35rem}
  .p-row .p-wide{grid-column:1/-1}

@@ -1,0 +1,79 @@
+"""This morning: who needs what, now?"""
+
+from __future__ import annotations
+
+from typing import Literal
+
+import streamlit as st
+
+from planner.charts.strip import floor_pct
+from planner.services.morning import DriverRow, ThisMorning
+from planner.services.notices import keep_notice
+from planner.ui.cached import morning_of
+from planner.ui.errors import plain_errors
+from planner.ui.morning_rows import row_html
+from planner.ui.navigation import go_to
+from planner.ui.page import Context, answer, end_page, line, note_for_next_run, start_page
+from planner.wording import clock, day, elevation, pressure, zone_name
+
+
+def place_line(screen: ThisMorning, ctx: Context) -> str:
+    """Place, elevation, local time and pressure with its source."""
+    place, air = screen.place, screen.air
+    if place is None or air is None:
+        return "Add places and drivers on Team."
+    beds = (
+        ""
+        if place.bed_elevation_m == place.track_elevation_m
+        else (f", beds {elevation(place.bed_elevation_m, ctx.units)}")
+    )
+    return (
+        f"{place.name}, {elevation(place.track_elevation_m, ctx.units)}{beds} · "
+        f"{day(screen.at, place.zone)}, {clock(screen.at, place.zone)} {zone_name(place.zone, screen.at)} · "
+        f"{pressure(air.pressure_hpa, ctx.units)}, {air.pressure_from}"
+    )
+
+
+def draw_row(row: DriverRow, screen: ThisMorning, low_pct: float, ctx: Context) -> None:
+    """One driver: the evidence, and what can be done."""
+    elsewhere = screen.place is not None and row.where.place.id != screen.place.id
+    with st.container(border=True, gap="small", key=f"p-card-{row.driver_id}"):
+        evidence, actions = st.columns([7, 1], gap="small", vertical_alignment="center")
+        evidence.html(row_html(row, ctx.now, low_pct=low_pct, elsewhere=elsewhere))
+        with actions.container(gap=None, key=f"p-acts-{row.driver_id}"):
+            again = "Measure again" if row.reading else "Measure"
+            if st.button(again, type="tertiary", key=f"again_{row.driver_id}"):
+                go_to("readings", row.driver_id)
+            if st.button("Note", type="tertiary", key=f"note_{row.driver_id}"):
+                ask(ctx, row, "note")
+            if st.button("Physician told", type="tertiary", key=f"told_{row.driver_id}"):
+                ask(ctx, row, "told the physician")
+
+
+@st.dialog("Keep for today")
+def ask(ctx: Context, row: DriverRow, kind: Literal["told the physician", "note"]) -> None:
+    """Ask for the words of a note, or for confirmation that the physician was told."""
+    with plain_errors(), st.form("notice", border=False):
+        label = (
+            f"Note on {row.driver}" if kind == "note" else f"{row.driver}: told the physician (words if any)"
+        )
+        text = st.text_area(label, max_chars=500)
+        if st.form_submit_button("Keep", type="primary"):
+            keep_notice(ctx.store, row.driver_id, kind, text, by=ctx.who, at=ctx.now)
+            note_for_next_run(f"Kept for {row.driver}.")
+            st.rerun()
+
+
+def main() -> None:
+    """Draw the page."""
+    ctx = start_page("This morning")
+    screen = morning_of(ctx)
+    answer(screen.sentence)
+    line(place_line(screen, ctx))
+    low_pct = floor_pct([morning for row in screen.rows for morning in row.mornings])
+    for row in screen.rows:
+        draw_row(row, screen, low_pct, ctx)
+    end_page(ctx)
+
+
+main()

@@ -1,0 +1,75 @@
+"""A driver's row on This morning: a line of a table on a laptop, a card on a phone."""
+
+from __future__ import annotations
+
+from datetime import datetime
+
+from planner.charts.strip import strip
+from planner.charts.theme import OUTCOME_STYLES
+from planner.monitoring.model import Notice
+from planner.services.morning import DriverRow
+from planner.ui.text import escaped
+from planner.wording import DASH, age, clock, per_cent, pulse
+
+
+def outcome_html(outcome: str) -> str:
+    """An outcome in words with its shape in front."""
+    style = OUTCOME_STYLES[outcome]
+    return (
+        f'<span class="p-out {outcome.replace(" ", "-")}"><span aria-hidden="true">{style.glyph}</span> '
+        f"{escaped(outcome)}</span>"
+    )
+
+
+def row_html(row: DriverRow, now: datetime, *, low_pct: float, elsewhere: bool) -> str:
+    """The whole row.
+
+    `low_pct` is the bottom of its strip, `elsewhere` adds where the driver is when most are not there.
+    """
+    place = f'<div class="p-small">{escaped(_place(row))}</div>' if elsewhere or row.where.on_the_way else ""
+    return (
+        '<div class="p-row">'
+        f'<div class="p-who"><div class="p-name">{escaped(row.driver)}</div>{outcome_html(row.outcome)}'
+        f"{place}</div>"
+        f'<div class="p-number"><div class="p-value">{escaped(_value(row))}</div>'
+        f"{_when(row, now)}</div>"
+        f'<div class="p-wide"><div class="p-why">{_reasons(row)}</div>{_notices(row)}</div>'
+        f'<div class="p-wide">{strip(row.mornings, low_pct)}</div>'
+        "</div>"
+    )
+
+
+def _place(row: DriverRow) -> str:
+    name = row.where.place.name
+    return f"on the way to {name}" if row.where.on_the_way else f"at {name}"
+
+
+def _value(row: DriverRow) -> str:
+    return DASH if row.reading is None else per_cent(row.reading.spo2_pct)
+
+
+def _when(row: DriverRow, now: datetime) -> str:
+    reading = row.reading
+    if reading is None:
+        return ""
+    asleep = " asleep" if reading.wakefulness == "asleep" else ""
+    lines = [f"{clock(reading.taken_at, row.zone)}{asleep}, {age(now - reading.taken_at)}"]
+    if reading.pulse_bpm is not None:
+        lines.append(f"pulse {pulse(reading.pulse_bpm)}")
+    return "".join(f'<div class="p-small">{escaped(text)}</div>' for text in lines)
+
+
+def _reasons(row: DriverRow) -> str:
+    text = escaped(" ".join(row.reasons))
+    return f'{text} <span class="p-do">{escaped(row.advice)}</span>' if row.advice else text
+
+
+def _notices(row: DriverRow) -> str:
+    return "".join(f'<div class="p-small">{escaped(notice_words(n, row.zone))}</div>' for n in row.notices)
+
+
+def notice_words(notice: Notice, zone: str) -> str:
+    """As "Physician told at 07:40 (coach): called Dr."."""
+    what = "Physician told" if notice.kind == "told the physician" else "Note"
+    by = f" ({notice.entered_by})" if notice.entered_by else ""
+    return f"{what} at {clock(notice.at, zone)}{by}" + (f": {notice.text}" if notice.text else "")
