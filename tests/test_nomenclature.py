@@ -1,0 +1,42 @@
+"""The nomenclature in DEVELOPERS.md and the one in the code are the same."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from planner.checks import QUANTITIES
+
+DEVELOPERS = Path(__file__).parents[1] / "DEVELOPERS.md"
+HEADING = "## Nomenclature"
+
+
+def rows_in_the_code() -> list[str]:
+    """The table as the code would have it, a Markdown row a quantity."""
+    return [f"| `{q.name}` | {q.meaning} | {q.unit} | {q.low:g} to {q.high:g} |" for q in QUANTITIES.values()]
+
+
+def rows_in_the_page() -> list[str]:
+    """The rows that stand in DEVELOPERS.md."""
+    page = DEVELOPERS.read_text(encoding="utf-8")
+    section = page.split(HEADING, 1)[1].split("\n## ", 1)[0]
+    return [line.strip() for line in section.splitlines() if line.startswith("| `")]
+
+
+def test_table_in_the_page_equals_the_code() -> None:
+    code, page = rows_in_the_code(), rows_in_the_page()
+    assert not set(code) - set(page), "\n".join(["add to DEVELOPERS.md:", *(r for r in code if r not in page)])
+    assert not set(page) - set(code), "\n".join(
+        ["no longer in planner/checks.py:", *(r for r in page if r not in code)]
+    )
+    assert page == code, "same rows, other order"
+
+
+def test_units_are_the_ones_that_names_carry() -> None:
+    ending = {
+        "_m": "m", "_hpa": "hPa", "_mmhg": "mmHg", "_c": "C", "_pct": "%", "_deg": "deg", "_kg": "kg", "_cm": "cm",
+        "_bpm": "1/min", "_kg_m3": "kg/m3",
+    }  # fmt: skip
+    for quantity in QUANTITIES.values():
+        for suffix, unit in ending.items():
+            if quantity.name.endswith(suffix):
+                assert quantity.unit == unit, quantity.name
