@@ -10,9 +10,9 @@ import pandas as pd
 
 from planner.charts.theme import Mode, colour, dressed
 
-HEIGHT: Final = 380
+HEIGHT: Final = 440
 # Names stand upright on the ground; this much of the height is kept free above the highest round.
-ROOM_FOR_NAMES: Final = 0.38
+ROOM_FOR_NAMES: Final = 0.42
 # Narrower than this, only the high rounds bear their names: the others would run into each other.
 NARROW_PX: Final = 700
 
@@ -29,8 +29,8 @@ def season_chart(
     """Draw the season's elevation over time.
 
     Parameters: all instants are UTC, all elevations in `unit`. `ground` has `at`, `elevation`; `rounds` has
-    `at`, `elevation`, `label` (name and date), `high` (bool); `course` has `at`, `elevation`, `where`;
-    `commitments` has `at`, `label`.
+    `at`, `elevation`, `top` (from where its name stands), `label` (name and date), `high` (bool); `course`
+    has `at`, `elevation`, `where`; `commitments` has `at`, `label`.
     """
     highest = float(max(ground["elevation"].max(), course["elevation"].max() if len(course) else 0.0))
     lowest = min(0.0, float(ground["elevation"].min()))
@@ -69,7 +69,11 @@ def season_chart(
         layers.append(
             alt.Chart(commitments)
             .mark_tick(color=colour("population_line", mode), thickness=2, size=10)
-            .encode(x=x, y=alt.value(HEIGHT - 5), tooltip=[alt.Tooltip("label:N", title="commitment")])
+            .encode(
+                x=x,
+                y=alt.value(alt.expr("height - 5")),
+                tooltip=[alt.Tooltip("label:N", title="commitment")],
+            )
         )
     layers.append(
         alt.Chart(pd.DataFrame({"at": [today]}))
@@ -87,6 +91,7 @@ def season_chart(
 def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     """Each round as a point on the ground with its name standing on it."""
     base = alt.Chart(rounds).encode(x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")])
+    top = alt.Y("top:Q")
     stands: dict[str, Any] = {"angle": 270, "align": "left", "baseline": "middle", "dx": 9, "fontSize": 11}
     return [
         base.mark_point(filled=True, size=28, shape="circle", color=colour("course_line", mode), opacity=1),
@@ -96,7 +101,7 @@ def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any
         base.transform_calculate(shown=f"width < {NARROW_PX} ? '' : datum.label")
         .transform_filter("!datum.high")
         .mark_text(**stands, color=colour("muted", mode))
-        .encode(text="shown:N"),
+        .encode(y=top, text="shown:N"),
     ]
 
 

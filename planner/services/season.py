@@ -11,7 +11,8 @@ from zoneinfo import ZoneInfo
 
 import numpy as np
 
-from planner.physiology.expectation import Expectation, expected_spo2
+from planner.physiology.capacity import aerobic_capacity_pct
+from planner.physiology.expectation import expected_spo2
 from planner.season.exposure import exposure_history, track_days, where_is
 from planner.season.model import Commitment, Driver, Leg, Place, PressureMeasurement, Round, Session, Stay
 from planner.store.store import Store
@@ -66,20 +67,31 @@ class Calendar:
 
 
 @dataclass(frozen=True)
+class ReadingRange:
+    """What a reading at rest is expected to be: middle and 95 % range."""
+
+    low_pct: float
+    mean_pct: float
+    high_pct: float
+
+
+@dataclass(frozen=True)
 class RoundCost:
     """What the present plan gives one driver at one high round.
 
-    `expected` holds two values: the first session and the race; None when no stay there is planned.
+    The ranges and the capacity are None while no stay there is planned.
     """
 
     round: Round
     place: Place
     first_session: Session
     race: Session
-    expected: Expectation | None
-    nights_there: int
+    nights_there: int  # before the first session
     free_days_before: int | None  # None before the first fixed thing of the season
     free_since: str  # the last fixed thing before
+    at_first_session: ReadingRange | None
+    at_race: ReadingRange | None
+    race_capacity_pct: float | None
 
 
 @dataclass(frozen=True)
@@ -116,32 +128,39 @@ def round_costs(calendar: Calendar, driver: Driver) -> list[RoundCost]:
     instants = [
         instant for each in high for instant in (calendar.starts_at(each), calendar.race_of(each).starts_at)
     ]
-    expected = expected_along(calendar, driver, instants)
-    costs = []
-    for i, each in enumerate(high):
-        start = calendar.starts_at(each)
-        holding = where_is(driver, start, calendar.stays, ())
-        there = isinstance(holding, Stay) and holding.place_id == each.place_id
-        before = _last_fixed_before(calendar, driver, each)
-        costs.append(
-            RoundCost(
-                round=each,
-                place=calendar.place_of(each),
-                first_session=calendar.sessions[each.id][0],
-                race=calendar.race_of(each),
-                expected=_part(expected, slice(2 * i, 2 * i + 2)) if there and expected else None,
-                nights_there=nights(holding, calendar.places, start) if isinstance(holding, Stay) else 0,
-                free_days_before=(start - before[0]) // ONE_DAY if before else None,
-                free_since=before[1] if before else "the start of the season",
-            )
-        )
-    return costs
+    ranges = expected_along(calendar, driver, instants)
+    return [_cost(calendar, driver, each, *ranges[2 * i : 2 * i + 2]) for i, each in enumerate(high)]
 
 
-def expected_along(calendar: Calendar, driver: Driver, instants: Sequence[datetime]) -> Expectation | None:
-    """Return what to expect of the driver's readings at rest at those instants, along the planned course."""
+def _cost(
+    calendar: Calendar, driver: Driver, given: Round, at_first: ReadingRange, at_race: ReadingRange
+) -> RoundCost:
+    start, race, place = calendar.starts_at(given), calendar.race_of(given), calendar.place_of(given)
+    holding = where_is(driver, start, calendar.stays, ())
+    stay = holding if isinstance(holding, Stay) and holding.place_id == place.id else None
+    before = _last_fixed_before(calendar, driver, given)
+    capacity = None
+    if stay is not None:
+        days = float(nights(stay, calendar.places, race.starts_at))
+        capacity = float(aerobic_capacity_pct(place.track_elevation_m, days))
+    return RoundCost(
+        round=given,
+        place=place,
+        first_session=calendar.sessions[given.id][0],
+        race=race,
+        nights_there=nights(stay, calendar.places, start) if stay else 0,
+        free_days_before=(start - before[0]) // ONE_DAY if before else None,
+        free_since=before[1] if before else "the start of the season",
+        at_first_session=at_first if stay else None,
+        at_race=at_race if stay else None,
+        race_capacity_pct=capacity,
+    )
+
+
+def expected_along(calendar: Calendar, driver: Driver, instants: Sequence[datetime]) -> list[ReadingRange]:
+    """Return what to expect of the driver's readings, awake at rest, at instants of the planned course."""
     if not instants:
-        return None
+        return []
     origin = min(instants)
     history = exposure_history(
         calendar.places[driver.home_place_id],
@@ -153,7 +172,9 @@ def expected_along(calendar: Calendar, driver: Driver, instants: Sequence[dateti
         track_days=calendar.days_at_the_track,
     )
     at_h = np.array([(instant - origin) / timedelta(hours=1) for instant in instants])
-    return expected_spo2(history, at_h)
+    expected = expected_spo2(history, at_h)
+    columns = (expected.low_spo2_pct, expected.mean_spo2_pct, expected.high_spo2_pct)
+    return [ReadingRange(*values) for values in np.column_stack(columns).tolist()]
 
 
 def whereabouts(calendar: Calendar, at: datetime) -> list[Whereabouts]:
@@ -192,7 +213,3 @@ def _last_fixed_before(calendar: Calendar, driver: Driver, given: Round) -> tupl
     fixed += [(one.ends_at, one.name) for one in calendar.commitments if one.driver_id == driver.id]
     return max((pair for pair in fixed if pair[0] <= start), default=None)
 
-
-def _part(expected: Expectation, wanted: slice) -> Expectation:
-    """Return some of the instants of an expectation."""
-    return type(expected)(**{name: value[wanted] for name, value in vars(expected).items()})

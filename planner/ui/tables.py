@@ -17,13 +17,14 @@ TABLE_STYLE: Final = """
 .p-table td{vertical-align:top}
 .p-table .p-right{text-align:right;white-space:nowrap;font-variant-numeric:tabular-nums}
 .p-table th.p-right{white-space:normal}
+.p-table .p-right+td:not(.p-right),.p-table .p-right+th:not(.p-right){padding-left:1.25rem}
 .p-table th:last-child,.p-table td:last-child{padding-right:0}
 .p-table tbody th{color:var(--text);font-size:.9375rem;font-weight:400;vertical-align:top}
 @media (max-width:640px){
  .p-table.p-stack thead{display:none}
  .p-table.p-stack tr{display:block;padding:.5rem 0;border-bottom:1px solid var(--rule)}
  .p-table.p-stack th,.p-table.p-stack td{display:flex;justify-content:space-between;gap:1rem;border:0;
-  padding:.1rem 0;text-align:right;white-space:normal}
+  padding:.1rem 0!important;text-align:right;white-space:normal}
  .p-table.p-stack tbody th{font-weight:600;text-align:left}
  .p-table.p-stack td::before{content:attr(data-label);color:var(--muted);text-align:left;flex:none}
  .p-table.p-stack td:empty{display:none}

@@ -1,0 +1,231 @@
+"""Season: where is everybody, and which rounds cost something?"""
+
+from __future__ import annotations
+
+from datetime import datetime
+
+import pandas as pd
+import streamlit as st
+
+from planner.charts.season import season_chart
+from planner.season.model import Driver, Leg, Stay
+from planner.services.season import (
+    HIGH_FROM_M,
+    Calendar,
+    ReadingRange,
+    RoundCost,
+    Whereabouts,
+    read_calendar,
+    round_costs,
+    whereabouts,
+)
+from planner.store.store import Store
+from planner.ui.page import Context, answer, end_page, line, start_page
+from planner.ui.tables import note, table
+from planner.units import from_house
+from planner.wording import (
+    DASH,
+    counted,
+    day,
+    day_and_clock,
+    elevation,
+    per_cent,
+    per_cent_range,
+)
+
+
+@st.cache_resource(show_spinner=False, max_entries=4)
+def calendar_of(store_uid: str, store_path: str, version: int, _store: Store) -> Calendar:
+    """The season of one state of one store."""
+    return read_calendar(_store)
+
+
+def main() -> None:
+    """Draw the page."""
+    ctx = start_page("Season")
+    calendar = calendar_of(ctx.store.uid, str(ctx.store.path), ctx.store.version(), ctx.store)
+    if not calendar.rounds:
+        answer("No rounds yet. Add places and rounds on Team, or read them from a file on Readings.")
+    else:
+        show_season(ctx, calendar)
+    end_page(ctx)
+
+
+def show_season(ctx: Context, calendar: Calendar) -> None:
+    """Draw the landscape, the high rounds and where everybody is."""
+    answer(headline(ctx, calendar))
+    driver = None
+    if calendar.drivers:
+        driver = st.selectbox(
+            "Driver",
+            calendar.drivers,
+            format_func=lambda each: each.name,
+            key="season_driver",
+            persist_state="session",
+        )
+    show_landscape(ctx, calendar, driver)
+    if driver is not None:
+        show_high_rounds(ctx, calendar, driver)
+    show_whereabouts(ctx, calendar)
+
+
+def headline(ctx: Context, calendar: Calendar) -> str:
+    """Say how many rounds are high, and which one comes next."""
+    high = [each for each in calendar.rounds if calendar.is_high(each)]
+    text = f"{counted(len(calendar.rounds), 'round')}, {len(high)} of them high."
+    coming = [each for each in high if calendar.ends_at(each) > ctx.now]
+    if not high:
+        return f"{counted(len(calendar.rounds), 'round')}, none of them high."
+    if not coming:
+        return f"{text} The high ones are over."
+    place = calendar.place_of(coming[0])
+    begun = calendar.starts_at(coming[0]) <= ctx.now
+    when = "now" if begun else f"from {day(calendar.starts_at(coming[0]), place.zone)}"
+    high_up = elevation(place.track_elevation_m, ctx.units)
+    return f"{text} {'On' if begun else 'Next'}: {coming[0].name} at {high_up}, {when}."
+
+
+def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> None:
+    """Draw the elevation over the year: the calendar as the ground, the driver's course over it."""
+    unit = ctx.units.elevation
+    ground, rounds = [], []
+    for each in calendar.rounds:
+        place = calendar.place_of(each)
+        height = from_house("elevation", place.track_elevation_m, unit)
+        start, end = calendar.starts_at(each), calendar.ends_at(each)
+        ground += [(start, height), (end, height)]
+        label = f"{each.name}, {day(calendar.race_of(each).starts_at, place.zone).split(' ', 1)[1]}"
+        top = from_house("elevation", max(place.track_elevation_m, place.bed_elevation_m), unit)
+        rounds.append((start + (end - start) / 2, height, top, label, calendar.is_high(each)))
+    course = [
+        (instant, from_house("elevation", bed_m, unit), f"{where}, {elevation(bed_m, ctx.units)}")
+        for instant, bed_m, where in course_of(calendar, driver)
+    ]
+    ticks = [
+        (each.starts_at, f"{each.name}, {day(each.starts_at, calendar.places[each.place_id].zone)}")
+        for each in calendar.commitments
+        if driver is not None and each.driver_id == driver.id
+    ]
+    st.altair_chart(
+        season_chart(
+            frame(ground, "at", "elevation"),
+            frame(rounds, "at", "elevation", "top", "label", "high"),
+            frame(course, "at", "elevation", "where"),
+            frame(ticks, "at", "label"),
+            ctx.now,
+            unit,
+        ),
+        theme=None,
+        width="stretch",
+        alt=f"Elevation over the season: {', '.join(label for *_, label, _ in rounds)}",
+    )
+    note(
+        "The ground is the calendar: each round at the elevation of its track, joined by straight lines. "
+        + (f"The dark line is where {driver.name} sleeps; ticks are commitments." if driver else "")
+    )
+
+
+def course_of(calendar: Calendar, driver: Driver | None) -> list[tuple[datetime, float, str]]:
+    """Where a driver sleeps over the season: an instant, the elevation of the bed, and where it stands."""
+    points = []
+    for stay in calendar.stays:
+        if driver is None or stay.driver_id != driver.id:
+            continue
+        place = calendar.places[stay.place_id]
+        bed_m = place.bed_elevation_m if stay.bed_elevation_m is None else stay.bed_elevation_m
+        points += [(stay.arrive_at, bed_m, place.name), (stay.depart_at, bed_m, place.name)]
+    return points
+
+
+def show_high_rounds(ctx: Context, calendar: Calendar, driver: Driver) -> None:
+    """Draw what the present plan gives this driver at the high rounds."""
+    costs = round_costs(calendar, driver)
+    if not costs:
+        return
+    table(
+        [
+            "high round",
+            "first session",
+            "track",
+            "free days before",
+            "nights there",
+            "SpO2 first session",
+            "SpO2 race",
+            "aerobic capacity",
+        ],
+        [cost_row(ctx, each) for each in costs],
+        right=(2, 4, 5, 6, 7),
+        caption=f"What the present plan gives {driver.name} at the high rounds",
+        stack=True,
+    )
+    unplanned = [each.round.name for each in costs if each.at_race is None]
+    if unplanned:
+        line(f"A dash: no stay is planned there yet ({', '.join(unplanned)}).")
+    note(
+        "SpO2 awake at rest, the range of 95 % of single readings. Free days lie between the last fixed "
+        "thing before (a round or a commitment) and the first session. Aerobic capacity on race day is per "
+        "cent of one's own at sea level, by the nights at the round alone, and no measure of lap time. A "
+        f"round is called high from {elevation(HIGH_FROM_M, ctx.units)} (judgement)."
+    )
+
+
+def cost_row(ctx: Context, cost: RoundCost) -> list[str]:
+    """One high round in words."""
+    free = DASH if cost.free_days_before is None else str(cost.free_days_before)
+    return [
+        cost.round.name,
+        day(cost.first_session.starts_at, cost.place.zone),
+        elevation(cost.place.track_elevation_m, ctx.units),
+        f"{free} after {cost.free_since}",
+        DASH if cost.at_race is None else str(cost.nights_there),
+        in_words(cost.at_first_session),
+        in_words(cost.at_race),
+        per_cent(cost.race_capacity_pct),
+    ]
+
+
+def in_words(found: ReadingRange | None) -> str:
+    """A range of readings, or a dash."""
+    return DASH if found is None else per_cent_range(found.low_pct, found.high_pct)
+
+
+def show_whereabouts(ctx: Context, calendar: Calendar) -> None:
+    """Draw where everybody is now and where they go next."""
+    if not calendar.drivers:
+        line("No drivers yet. Add them on Team.")
+        return
+    table(
+        ["driver", "where", "sleeps at", "nights there", "goes next"],
+        [whereabouts_row(ctx, calendar, each) for each in whereabouts(calendar, ctx.now)],
+        right=(2, 3),
+        caption=f"Where everybody is on {day(ctx.now)}",
+        stack=True,
+    )
+
+
+def whereabouts_row(ctx: Context, calendar: Calendar, found: Whereabouts) -> list[str]:
+    """One driver's whereabouts in words."""
+    places, coming = calendar.places, found.next_leg
+    onward = DASH
+    if coming is not None:
+        leaves = day_and_clock(coming.depart_at, places[coming.from_place_id].zone)
+        onward = f"{leaves}: {places[coming.to_place_id].name}"
+    holding = found.holding
+    if isinstance(holding, Stay):
+        place = places[holding.place_id]
+        bed_m = place.bed_elevation_m if holding.bed_elevation_m is None else holding.bed_elevation_m
+        return [found.driver.name, place.name, elevation(bed_m, ctx.units), str(found.nights_there), onward]
+    if isinstance(holding, Leg):
+        way = f"on the way from {places[holding.from_place_id].name} to {places[holding.to_place_id].name}"
+        return [found.driver.name, way, DASH, DASH, onward]
+    return [found.driver.name, "no stay planned", DASH, DASH, onward]
+
+
+def frame(rows: list[tuple[object, ...]], *columns: str) -> pd.DataFrame:
+    """Rows as a frame, instants in UTC without a zone, as the chart's axis reads them."""
+    table_of = pd.DataFrame(rows, columns=list(columns))
+    table_of["at"] = pd.to_datetime(table_of["at"], utc=True).dt.tz_localize(None)
+    return table_of
+
+
+main()
