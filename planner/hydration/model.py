@@ -23,19 +23,6 @@ class CockpitConditions:
 
 
 @dataclass(frozen=True)
-class ClothingEnsemble:
-    """What is worn in the car, named. `Weighing.ensemble` is such a name. Permeability is im, with its range."""
-
-    name: str
-    insulation_clo: float
-    permeability: float
-    permeability_low: float
-    permeability_high: float
-    source: str = ""  # where the figures come from, or the word judgement
-    id: int = 0
-
-
-@dataclass(frozen=True)
 class Weighing:
     """One session's weigh-in and weigh-out; `mass_after_kg` is None until the weigh-out."""
 
