@@ -10,12 +10,11 @@ from pythermalcomfort.models import phs
 from pythermalcomfort.psychrometrics import wet_bulb_tmp
 
 from planner.errors import InputError
-from planner.physiology.air import standard_pressure_hpa
+from planner.physiology.air import saturation_vapour_pressure_kpa, standard_pressure_hpa
 from planner.physiology.heat import (
     body_surface_area_m2,
     heat_balance,
     humidity_in_warmer_air_pct,
-    saturation_vapour_pressure_kpa,
     vapour_pressure_kpa,
     wet_bulb_c,
 )

@@ -13,6 +13,7 @@ import numpy as np
 
 from planner.checks import FloatArray, FloatLike, checked, like
 from planner.constants import SEA_LEVEL_PRESSURE_HPA, ZERO_CELSIUS_K
+from planner.physiology.air import _saturation_vapour_pressure_kpa as _saturation_kpa
 
 STEFAN_BOLTZMANN_W_M2_K4: Final = 5.67e-8
 SKIN_EMISSIVITY: Final = 0.97
@@ -48,28 +49,6 @@ class HeatBalance:
     maximal_w_m2: FloatLike
 
 
-def saturation_vapour_pressure_kpa(air_temperature_c: FloatLike) -> FloatLike:
-    """Pressure of saturated water vapour over water.
-
-    0.6105 exp(17.27 t / (t + 237.3)).
-
-    Parameters:
-        air_temperature_c: temperature of air or skin [C], scalar or array.
-    Returns:
-        Vapour pressure [kPa], the shape of air_temperature_c.
-    Raises:
-        InputError: a temperature outside -60 to 75 C.
-    Valid:
-        0 to 50 C to 0.3 %; below freezing it stands for supercooled water.
-    Source:
-        Magnus formula as printed in ISO 7933:2004 (published).
-    Example:
-        >>> round(saturation_vapour_pressure_kpa(36.0), 2)
-        5.94
-    """
-    return like(_saturation_kpa(checked("air_temperature_c", air_temperature_c)), air_temperature_c)
-
-
 def vapour_pressure_kpa(air_temperature_c: FloatLike, humidity_pct: FloatLike) -> FloatLike:
     """Partial pressure of water vapour in air.
 
@@ -81,7 +60,7 @@ def vapour_pressure_kpa(air_temperature_c: FloatLike, humidity_pct: FloatLike) -
     Raises:
         InputError: an input out of range.
     Valid:
-        As saturation_vapour_pressure_kpa.
+        As air.saturation_vapour_pressure_kpa.
     Source:
         Definition of relative humidity; Magnus formula as in ISO 7933:2004 (published).
     """
@@ -316,10 +295,6 @@ def heat_balance(
         surface, convection, radiation, breath_convection, breath_evaporation, required, maximal
     )
     return HeatBalance(*(like(part, *given) for part in parts))
-
-
-def _saturation_kpa(temperature: FloatArray) -> FloatArray:
-    return 0.6105 * np.exp(17.27 * temperature / (temperature + 237.3))
 
 
 def _clothing_surface(
