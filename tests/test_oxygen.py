@@ -23,6 +23,11 @@ def test_water_vapour_is_taken_off() -> None:
     assert oxygen.inspired_po2_mmhg(760.0 * HPA_PER_MMHG, 1.0) == pytest.approx(760.0 - 47.0)
 
 
+def test_plain_air_lies_between_the_published_fractions() -> None:
+    # Published: 0.2093 to 0.2095.
+    assert 0.2093 <= AIR_OXYGEN_FRACTION <= 0.2095
+
+
 @FEW
 @given(st.floats(-430.0, 9000.0), LATITUDES)
 def test_equivalent_elevation_of_plain_air_is_where_one_stands(elevation_m: float, latitude: float) -> None:
@@ -74,6 +79,19 @@ def test_paco2_falls_with_elevation_and_with_time_there(elevation_m: float, days
     here = oxygen.paco2_mmhg(elevation_m, days)
     assert oxygen.paco2_mmhg(elevation_m - 1.0, days) > here
     assert oxygen.paco2_mmhg(elevation_m, days + 1.0) <= here
+
+
+def test_time_constant_and_asymptote_are_those_of_the_rows_by_day() -> None:
+    # Computed by a search over time constants with the other two in closed form, through the lowlanders at
+    # 3600 m of Wachsmuth 2013, Br J Sports Med 47:i93 (published): 2 h, day 3, days 5-7, day 12.
+    days, measured = np.array([2.0 / 24.0, 3.0, 6.0, 12.0]), np.array([39.1, 35.8, 32.4, 30.7])
+    constants = np.arange(2.0, 12.0, 0.05)
+    fits = [np.polynomial.Polynomial.fit(np.exp(-days / c), measured, 1).convert() for c in constants]
+    misses = [((f(np.exp(-days / c)) - measured) ** 2).sum() for f, c in zip(fits, constants, strict=True)]
+    best = int(np.argmin(misses))
+    assert constants[best] == pytest.approx(oxygen.PACO2_TIME_CONSTANT_D, abs=0.4)
+    # The acclimatised line, published on its own by others, meets that asymptote.
+    assert fits[best].coef[0] == pytest.approx(oxygen.paco2_mmhg(3600.0, 3650.0), abs=0.4)
 
 
 def test_paco2_goes_two_thirds_of_the_way_in_one_time_constant() -> None:

@@ -16,6 +16,7 @@ from planner.physiology.air import (
     low_latitude_elevation_m,
     low_latitude_pressure_hpa,
     moist_air_density_kg_m3,
+    site_pressure,
     standard_air_density_kg_m3,
     standard_elevation_m,
     standard_pressure_hpa,
@@ -150,6 +151,14 @@ def test_alveolar_gas_equation_goes_over_into_the_short_form(row: Row) -> None:
         row["inspired_po2_mmhg"], row["paco2_mmhg"], row["oxygen_fraction"], row["respiratory_quotient"]
     )
     row.check(full - row["paco2_mmhg"] * row["oxygen_fraction"] * (1.0 / row["respiratory_quotient"] - 1.0))
+
+
+@cases("capillary_oxygen")
+def test_alveolar_oxygen_lies_above_capillary_blood(row: Row) -> None:
+    inspired = inspired_po2_mmhg(site_pressure(row["elevation_m"], row["latitude_deg"]).pressure_hpa)
+    difference = alveolar_po2_mmhg(inspired, row["paco2_mmhg"]) - row.expected
+    # Blood never holds more than the alveoli; capillary samples lose some more (the upper end: a judgement).
+    assert -row.tolerance < difference < 12.0
 
 
 @cases("paco2", quantity="paco2_mmhg")
