@@ -121,7 +121,7 @@ def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> N
     )
     note(
         "The ground is the calendar: each round at the elevation of its track, joined by straight lines. "
-        + (f"The dark line is where {driver.name} sleeps; ticks are commitments." if driver else "")
+        + (f"The thin line is where {driver.name} sleeps; ticks are commitments." if driver else "")
     )
 
 

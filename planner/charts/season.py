@@ -13,8 +13,9 @@ from planner.charts.theme import Mode, colour, dressed
 HEIGHT: Final = 440
 # Names stand upright on the ground; this much of the height is kept free above the highest round.
 ROOM_FOR_NAMES: Final = 0.42
-# Narrower than this, only the high rounds bear their names: the others would run into each other.
+# Narrower than this, only high rounds bear their names, and only where they do not run into each other.
 NARROW_PX: Final = 700
+NARROW_GAP: Final = 0.05  # share of the season: about a line's height on a phone
 
 
 def season_chart(
@@ -64,7 +65,6 @@ def season_chart(
             .mark_line(color=colour("text", mode), strokeWidth=1.5)
             .encode(x=x, y=y, order="at:T", tooltip=[alt.Tooltip("where:N", title="the driver")])
         )
-    layers += _signposts(rounds, x, y, mode)
     if len(commitments):
         layers.append(
             alt.Chart(commitments)
@@ -75,34 +75,49 @@ def season_chart(
                 tooltip=[alt.Tooltip("label:N", title="commitment")],
             )
         )
-    layers.append(
-        alt.Chart(pd.DataFrame({"at": [today]}))
-        .mark_rule(color=colour("refer", mode), strokeWidth=1)
-        .encode(x=x)
-    )
-    layers.append(
-        alt.Chart(pd.DataFrame({"at": [today], "label": ["today"]}))
-        .mark_text(align="left", baseline="top", dx=4, color=colour("muted", mode))
-        .encode(x=x, y=alt.value(0), text="label:N")
-    )
+    layers += _today(today, x, mode)
+    layers += _signposts(rounds, x, y, mode)
     return dressed(alt.layer(*layers).properties(height=HEIGHT, width="container"), mode)
+
+
+def _today(today: datetime, x: alt.X, mode: Mode) -> list[Any]:
+    """A hairline with its word at the top."""
+    base = alt.Chart(pd.DataFrame({"at": [today], "label": ["today"]})).encode(x=x)
+    return [
+        base.mark_rule(color=colour("refer", mode), strokeWidth=1),
+        base.mark_text(align="left", baseline="top", dx=4, color=colour("muted", mode)).encode(
+            y=alt.value(0), text="label:N"
+        ),
+    ]
 
 
 def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     """Each round as a point on the ground with its name standing on it."""
-    base = alt.Chart(rounds).encode(x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")])
-    top = alt.Y("top:Q")
+    base = alt.Chart(rounds.assign(apart=_apart(rounds))).encode(
+        x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")]
+    )
+    high = base.transform_filter(f"datum.high && (width >= {NARROW_PX} || datum.apart)")
+    low = base.transform_filter(f"!datum.high && width >= {NARROW_PX}")
+    name: dict[str, Any] = {"y": alt.Y("top:Q"), "text": alt.Text("label:N")}
     stands: dict[str, Any] = {"angle": 270, "align": "left", "baseline": "middle", "dx": 9, "fontSize": 11}
+    behind: dict[str, Any] = {"stroke": colour("page", mode), "strokeWidth": 3, "strokeJoin": "round"}
     return [
         base.mark_point(filled=True, size=28, shape="circle", color=colour("course_line", mode), opacity=1),
-        base.transform_filter("datum.high")
-        .mark_text(**stands, color=colour("text", mode), fontWeight=600)
-        .encode(text="label:N"),
-        base.transform_calculate(shown=f"width < {NARROW_PX} ? '' : datum.label")
-        .transform_filter("!datum.high")
-        .mark_text(**stands, color=colour("muted", mode))
-        .encode(y=top, text="shown:N"),
+        # The first of the two is the page's colour around the letters, so that lines do not cross them.
+        high.mark_text(**stands, **behind, fontWeight=600).encode(**name),
+        high.mark_text(**stands, color=colour("text", mode), fontWeight=600).encode(**name),
+        low.mark_text(**stands, color=colour("muted", mode)).encode(**name),
     ]
+
+
+def _apart(rounds: pd.DataFrame) -> list[bool]:
+    """Which names have room on a narrow screen: the highest rounds first, each far enough from the others."""
+    span = rounds["at"].max() - rounds["at"].min()
+    kept: list[int] = []
+    for i in rounds["elevation"].sort_values(ascending=False).index:
+        if all(abs(rounds["at"][i] - rounds["at"][j]) > span * NARROW_GAP for j in kept):
+            kept.append(i)
+    return [i in kept for i in rounds.index]
 
 
 def _round_steps(highest: float) -> list[float]:

@@ -47,7 +47,7 @@ def _cell(key: str, value: object) -> str:
     if isinstance(value, str):
         return value
     if isinstance(value, Sequence):
-        return "; ".join(str(each) for each in value)
+        return "; ".join(str(each) for each in value) or "-"
     return str(value)
 
 
