@@ -10,9 +10,9 @@ from typing import Any
 
 from sqlalchemy import Connection, Engine, create_engine, event
 from sqlalchemy.engine import URL
-from sqlalchemy.exc import DBAPIError, SQLAlchemyError
+from sqlalchemy.exc import SQLAlchemyError, StatementError
 
-from planner.errors import StoreError
+from planner.errors import PlannerError, StoreError
 
 # Written into the file's header, so that a database of another program is recognised ("plan" as four bytes).
 APPLICATION_ID = int.from_bytes(b"plan", "big")
@@ -76,13 +76,17 @@ def plain_errors(path: Path) -> Iterator[None]:
     """Turn the database's errors into one plain line."""
     try:
         yield
+    except StatementError as error:
+        if isinstance(error.orig, PlannerError):
+            raise error.orig from error  # a value that a column type refused
+        raise StoreError(f"{path}: {plain_words(error)}") from error
     except (SQLAlchemyError, sqlite3.Error) as error:
         raise StoreError(f"{path}: {plain_words(error)}") from error
 
 
 def plain_words(error: Exception) -> str:
     """What a database error means to the user, on one line."""
-    cause: Any = error.orig if isinstance(error, DBAPIError) and error.orig is not None else error
+    cause: Any = error.orig if isinstance(error, StatementError) and error.orig is not None else error
     message = " ".join(str(cause).split())
     if "file is not a database" in message:
         return "this is not a database of this program"

@@ -14,7 +14,7 @@ from datetime import UTC, datetime
 from sqlalchemy import Connection, Engine
 
 from planner.errors import StoreError
-from planner.store import schema
+from planner.store import schema, version_1
 from planner.store.database import APPLICATION_ID, reading, writing
 
 
@@ -27,7 +27,8 @@ class Migration:
 
 
 def _every_record(connection: Connection) -> None:
-    schema.metadata.create_all(connection)
+    for statement in version_1.STATEMENTS:
+        connection.exec_driver_sql(statement)
 
 
 MIGRATIONS: tuple[Migration, ...] = (Migration("every record of the first release", _every_record),)
@@ -39,10 +40,11 @@ def migrate(engine: Engine, migrations: Sequence[Migration] = MIGRATIONS) -> Non
     Raises: StoreError when the file belongs to another program or to a newer version of this one.
     """
     with reading(engine) as connection:
-        if version_of(connection, newest=len(migrations)) == len(migrations):
-            return
-    if len(migrations) > 0:
-        _use_write_ahead_log(engine)
+        # Before anything is written: another program's file is left as it is.
+        version = version_of(connection, newest=len(migrations))
+    _use_write_ahead_log(engine)
+    if version == len(migrations):
+        return
     with writing(engine) as connection:
         # Another process may have migrated since the look above.
         version = version_of(connection, newest=len(migrations))
@@ -81,7 +83,7 @@ def version_of(connection: Connection, newest: int) -> int:
 
 
 def _use_write_ahead_log(engine: Engine) -> None:
-    """Readers then never wait for a writer; the setting stays in the file."""
+    """Readers then never wait for a writer. The setting stays in the file, but a backup is without it."""
     raw = engine.raw_connection()
     try:
         raw.cursor().execute("PRAGMA journal_mode = WAL")

@@ -19,7 +19,9 @@ from sqlalchemy import Connection, Engine, delete, insert, select, update
 
 from planner.errors import InputError, NotFoundError, StoreError
 from planner.monitoring.model import Reading
-from planner.record_checks import found, name, text
+from planner.record_checks import Problem, found
+from planner.record_checks import name as name_problem
+from planner.record_checks import text as text_problem
 from planner.store import history, schema, upkeep
 from planner.store.bulk import held_before, reading_columns
 from planner.store.database import create_database_engine, plain_errors, reading, writing
@@ -238,8 +240,7 @@ class Store:
 
     def set_setting(self, name: str, value: str | None) -> None:
         """Keep a setting; None takes it away. Settings are not part of the log of changes."""
-        for problem in found((text("name", name), None if value is None else text("value", value))):
-            raise problem
+        _refuse(name_problem("name", name), None if value is None else text_problem("value", value))
         current = self._current()
         if current is not None:
             _set_setting(current.connection, name, value)
@@ -285,8 +286,7 @@ class Store:
 
     @contextmanager
     def _change_set(self, by: str, why: str) -> Iterator[OpenChangeSet]:
-        for problem in found((name("by", by), text("why", why))):
-            raise problem
+        _refuse(name_problem("by", by), text_problem("why", why))
         current = self._current()
         if current is not None:
             if by != current.by:
@@ -314,6 +314,11 @@ class Store:
         inside = self._current() is not None
         with self._change_set(by, why) as current, current.connection.begin_nested():
             yield current, why if inside else ""
+
+
+def _refuse(*problems: Problem) -> None:
+    for problem in found(problems):
+        raise problem
 
 
 def _move_version(connection: Connection) -> None:
