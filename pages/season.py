@@ -8,11 +8,11 @@ import pandas as pd
 import streamlit as st
 
 from planner.charts.season import season_chart
+from planner.season.constraints import HIGH_FROM_M
+from planner.season.evaluate import Spread
 from planner.season.model import Driver, Leg, Stay
 from planner.services.season import (
-    HIGH_FROM_M,
     Calendar,
-    ReadingRange,
     RoundCost,
     Whereabouts,
     read_calendar,
@@ -150,7 +150,7 @@ def show_high_rounds(ctx: Context, calendar: Calendar, driver: Driver) -> None:
             "free days before",
             "nights there",
             "SpO2 first session",
-            "SpO2 race",
+            "SpO2 race morning",
             "aerobic capacity",
         ],
         [cost_row(ctx, each) for each in costs],
@@ -158,35 +158,36 @@ def show_high_rounds(ctx: Context, calendar: Calendar, driver: Driver) -> None:
         caption=f"What the present plan gives {driver.name} at the high rounds",
         stack=True,
     )
-    unplanned = [each.round.name for each in costs if each.at_race is None]
+    unplanned = [each.round.name for each in costs if each.outlook is None]
     if unplanned:
         line(f"A dash: no stay is planned there yet ({', '.join(unplanned)}).")
     note(
         "SpO2 awake at rest, the range of 95 % of single readings. Free days lie between the last fixed "
-        "thing before (a round or a commitment) and the first session. Aerobic capacity on race day is per "
-        "cent of one's own at sea level, by the nights at the round alone, and no measure of lap time. A "
-        f"round is called high from {elevation(HIGH_FROM_M, ctx.units)} (judgement)."
+        "thing before (a round or a commitment) and the first session; nights there are those before it. "
+        "Aerobic capacity on race morning is per cent of one's own at sea level and no measure of lap time. "
+        f"A round is called high from {elevation(HIGH_FROM_M, ctx.units)} (judgement)."
     )
 
 
 def cost_row(ctx: Context, cost: RoundCost) -> list[str]:
     """One high round in words."""
     free = DASH if cost.free_days_before is None else str(cost.free_days_before)
+    given = cost.outlook
     return [
         cost.round.name,
         day(cost.first_session.starts_at, cost.place.zone),
         elevation(cost.place.track_elevation_m, ctx.units),
         f"{free} after {cost.free_since}",
-        DASH if cost.at_race is None else str(cost.nights_there),
-        in_words(cost.at_first_session),
-        in_words(cost.at_race),
-        per_cent(cost.race_capacity_pct),
+        DASH if given is None else str(cost.nights_there),
+        DASH if given is None else in_words(given.first_session_spo2_pct),
+        DASH if given is None else in_words(given.race_spo2_pct),
+        DASH if given is None else per_cent(given.race_capacity_pct.mean),
     ]
 
 
-def in_words(found: ReadingRange | None) -> str:
-    """A range of readings, or a dash."""
-    return DASH if found is None else per_cent_range(found.low_pct, found.high_pct)
+def in_words(found: Spread) -> str:
+    """A 95 % range in whole per cent."""
+    return per_cent_range(found.low, found.high)
 
 
 def show_whereabouts(ctx: Context, calendar: Calendar) -> None:

@@ -2,25 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass
-from datetime import date, datetime, time, timedelta
+from datetime import date, datetime, timedelta
 from functools import cached_property
 from typing import Final
 from zoneinfo import ZoneInfo
 
-import numpy as np
-
-from planner.physiology.capacity import aerobic_capacity_pct
-from planner.physiology.expectation import expected_spo2
-from planner.season.exposure import exposure_history, track_days, where_is
+from planner.physiology.person import PersonPosterior
+from planner.season.constraints import is_high
+from planner.season.evaluate import RoundOutlook, Setting, outlooks, round_point
+from planner.season.exposure import track_days, where_is
+from planner.season.itinerary import Itinerary
 from planner.season.model import Commitment, Driver, Leg, Place, PressureMeasurement, Round, Session, Stay
+from planner.season.nights import MIDDLE_OF_THE_NIGHT
+from planner.season.travel import LegTimes
 from planner.store.store import Store
 
-# From here on a round is called high: judgement. Below about 1 500 m saturation hardly moves at rest.
-HIGH_FROM_M: Final = 1500.0
-# A night counts as slept where the driver is at this local time: judgement.
-MIDDLE_OF_THE_NIGHT: Final = time(3)
 ONE_DAY: Final = timedelta(days=1)
 
 
@@ -62,36 +60,25 @@ class Calendar:
 
     def is_high(self, given: Round) -> bool:
         """Return whether track or beds lie high enough to cost something."""
-        place = self.place_of(given)
-        return max(place.track_elevation_m, place.bed_elevation_m) >= HIGH_FROM_M
+        return is_high(self.place_of(given))
 
-
-@dataclass(frozen=True)
-class ReadingRange:
-    """What a reading at rest is expected to be: middle and 95 % range."""
-
-    low_pct: float
-    mean_pct: float
-    high_pct: float
+    def itinerary_of(self, driver: Driver) -> Itinerary:
+        """Return a driver's stays and legs."""
+        return Itinerary.of(driver.id, self.stays, self.legs)
 
 
 @dataclass(frozen=True)
 class RoundCost:
-    """What the present plan gives one driver at one high round.
-
-    The ranges and the capacity are None while no stay there is planned.
-    """
+    """What the present plan gives one driver at one high round; no outlook while no stay there is planned."""
 
     round: Round
     place: Place
     first_session: Session
     race: Session
-    nights_there: int  # before the first session
     free_days_before: int | None  # None before the first fixed thing of the season
     free_since: str  # the last fixed thing before
-    at_first_session: ReadingRange | None
-    at_race: ReadingRange | None
-    race_capacity_pct: float | None
+    nights_there: int  # before the first session
+    outlook: RoundOutlook | None
 
 
 @dataclass(frozen=True)
@@ -122,59 +109,49 @@ def read_calendar(store: Store) -> Calendar:
     )
 
 
-def round_costs(calendar: Calendar, driver: Driver) -> list[RoundCost]:
-    """Return what the plan gives the driver at every high round, in time order."""
+def round_costs(calendar: Calendar, driver: Driver, person: PersonPosterior | None = None) -> list[RoundCost]:
+    """Return what the plan gives the driver at every high round, in time order.
+
+    `person` is what readings have taught of the driver; None = the population.
+    """
     high = [each for each in calendar.rounds if calendar.is_high(each)]
-    instants = [
-        instant for each in high for instant in (calendar.starts_at(each), calendar.race_of(each).starts_at)
+    points = [
+        round_point(
+            each.id,
+            each.name,
+            calendar.place_of(each),
+            calendar.starts_at(each),
+            calendar.race_of(each).starts_at,
+        )
+        for each in high
     ]
-    ranges = expected_along(calendar, driver, instants)
-    return [_cost(calendar, driver, each, *ranges[2 * i : 2 * i + 2]) for i, each in enumerate(high)]
+    setting = Setting(
+        driver=driver,
+        places=calendar.places,
+        times=LegTimes(calendar.places, calendar.legs),
+        track_days=calendar.days_at_the_track,
+        pressures=calendar.pressures,
+        person=person,
+    )
+    (given,) = outlooks([calendar.itinerary_of(driver)], points, setting) or ([],)
+    return [_cost(calendar, driver, each, outlook) for each, outlook in zip(high, given, strict=True)]
 
 
-def _cost(
-    calendar: Calendar, driver: Driver, given: Round, at_first: ReadingRange, at_race: ReadingRange
-) -> RoundCost:
-    start, race, place = calendar.starts_at(given), calendar.race_of(given), calendar.place_of(given)
+def _cost(calendar: Calendar, driver: Driver, given: Round, outlook: RoundOutlook) -> RoundCost:
+    start = calendar.starts_at(given)
     holding = where_is(driver, start, calendar.stays, ())
-    stay = holding if isinstance(holding, Stay) and holding.place_id == place.id else None
+    stay = holding if isinstance(holding, Stay) and holding.place_id == given.place_id else None
     before = _last_fixed_before(calendar, driver, given)
-    capacity = None
-    if stay is not None:
-        days = float(nights(stay, calendar.places, race.starts_at))
-        capacity = float(aerobic_capacity_pct(place.track_elevation_m, days))
     return RoundCost(
         round=given,
-        place=place,
+        place=calendar.place_of(given),
         first_session=calendar.sessions[given.id][0],
-        race=race,
-        nights_there=nights(stay, calendar.places, start) if stay else 0,
+        race=calendar.race_of(given),
         free_days_before=(start - before[0]) // ONE_DAY if before else None,
         free_since=before[1] if before else "the start of the season",
-        at_first_session=at_first if stay else None,
-        at_race=at_race if stay else None,
-        race_capacity_pct=capacity,
+        nights_there=nights(stay, calendar.places, start) if stay else 0,
+        outlook=outlook if stay else None,
     )
-
-
-def expected_along(calendar: Calendar, driver: Driver, instants: Sequence[datetime]) -> list[ReadingRange]:
-    """Return what to expect of the driver's readings, awake at rest, at instants of the planned course."""
-    if not instants:
-        return []
-    origin = min(instants)
-    history = exposure_history(
-        calendar.places[driver.home_place_id],
-        [stay for stay in calendar.stays if stay.driver_id == driver.id],
-        [leg for leg in calendar.legs if leg.driver_id == driver.id],
-        calendar.places,
-        origin=origin,
-        pressures=calendar.pressures,
-        track_days=calendar.days_at_the_track,
-    )
-    at_h = np.array([(instant - origin) / timedelta(hours=1) for instant in instants])
-    expected = expected_spo2(history, at_h)
-    columns = (expected.low_spo2_pct, expected.mean_spo2_pct, expected.high_spo2_pct)
-    return [ReadingRange(*values) for values in np.column_stack(columns).tolist()]
 
 
 def whereabouts(calendar: Calendar, at: datetime) -> list[Whereabouts]:
