@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from datetime import UTC, datetime
 from pathlib import Path
 
@@ -17,15 +16,12 @@ PAGE = Path(__file__).parents[1] / "pages" / "places.py"
 NOW = datetime(2026, 5, 14, 6, tzinfo=UTC)
 
 
-@pytest.fixture
-def store(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Store]:
+@pytest.fixture(autouse=True)
+def page_of_this_store(store: Store, monkeypatch: pytest.MonkeyPatch) -> None:
     st.cache_resource.clear()
     st.cache_data.clear()
-    monkeypatch.setenv("PLANNER_STORE", str(tmp_path / "planner.db"))
-    opened = Store.open(tmp_path / "planner.db")
-    opened.set_setting("clock_frozen_at", NOW.isoformat())
-    yield opened
-    opened.close()
+    monkeypatch.setenv("PLANNER_STORE", str(store.path))
+    store.set_setting("clock_frozen_at", NOW.isoformat())
 
 
 @pytest.fixture
