@@ -6,6 +6,7 @@ from collections import defaultdict
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from itertools import takewhile
 from typing import Any
 
 from sqlalchemy import Column, Connection, func, insert, literal, select, update
@@ -14,7 +15,7 @@ from sqlalchemy.exc import IntegrityError
 from planner.errors import InputError, NotFoundError, StoreError
 from planner.store import schema
 from planner.store.bulk import insert_rows
-from planner.store.history import Action, ChangeSet, in_force
+from planner.store.history import Action, ChangeSet, in_force, newest_first
 from planner.store.records import (
     KIND_BY_NAME,
     KIND_BY_TABLE,
@@ -97,16 +98,17 @@ class OpenChangeSet:
         after = values_of(kind, record)
         if before != after:
             self._check_references(kind, [after])
-            self._change(kind, record.id, before, after, why)
+            self._update(kind, record.id, after)
+            self._log_change(kind, record.id, before, why)
         return record
 
-    def _change(
-        self, kind: Kind, record_id: int, before: Mapping[str, Any], after: Mapping[str, Any], why: str
-    ) -> None:
+    def _update(self, kind: Kind, record_id: int, after: Mapping[str, Any]) -> None:
         try:
             self.connection.execute(update(kind.table).where(kind.table.c.id == record_id).values(**after))
         except IntegrityError as error:
             raise self._why_refused(kind, [after], error, except_id=record_id) from error
+
+    def _log_change(self, kind: Kind, record_id: int, before: Mapping[str, Any], why: str) -> None:
         self.connection.execute(
             insert(schema.change),
             {
@@ -209,22 +211,26 @@ class OpenChangeSet:
         Raises: StoreError when a change set in force touched one of them since.
         """
         self._refuse_if_touched_since(target)
-        why = ""
         first_action, first_values = self._before(target)
-        for (kind, record_id), values in first_values.items():
-            now = self._state(kind, record_id).values
-            before = {**now, **values}
-            if now != before:
-                self._change(kind, record_id, now, before, why)
         appeared: dict[Kind, set[int]] = defaultdict(set)
         was_live: dict[Kind, set[int]] = defaultdict(set)
         for (kind, record_id), action in first_action.items():
             (appeared if action in ("add", "restore") else was_live)[kind].add(record_id)
-        for kind, ids in appeared.items():
-            self._set_removed(kind, self._ids_where(kind, ids, live=True), why)
+        replaced: dict[tuple[Kind, int], dict[str, Any]] = {}
+        for (kind, record_id), values in first_values.items():
+            now = self._state(kind, record_id).values
+            if now != {**now, **values}:
+                self._update(kind, record_id, values)
+                replaced[kind, record_id] = now
+        # In the log a record is restored before it changes, and changes before it is removed.
         for kind, ids in was_live.items():
-            self._set_live(kind, self._ids_where(kind, ids, live=False), why)
+            self._set_live(kind, self._ids_where(kind, ids, live=False), "")
+        for (kind, record_id), now in replaced.items():
+            self._log_change(kind, record_id, now, "")
+        for kind, ids in appeared.items():
+            self._set_removed(kind, self._ids_where(kind, ids, live=True), "")
         self._refuse_dangling({kind for kind, _ in first_action})
+        self.records_written = True  # that it was undone is kept, also when its writes had cancelled out
 
     def _before(
         self, target: ChangeSet
@@ -245,23 +251,22 @@ class OpenChangeSet:
         return actions, values
 
     def _refuse_if_touched_since(self, target: ChangeSet) -> None:
-        log, sets = schema.change, schema.change_set
+        log = schema.change
         touched = select(log.c.kind, log.c.record_id).where(log.c.change_set_id == target.id).subquery()
-        rows = self.connection.execute(
-            select(sets.c.id, sets.c.at, sets.c.by, sets.c.why, sets.c.undoes)
-            .join(log, log.c.change_set_id == sets.c.id)
-            .join(touched, (touched.c.record_id == log.c.record_id) & (touched.c.kind == log.c.kind))
-            .where(log.c.change_set_id > target.id)
-            .distinct()
-            .order_by(sets.c.id.desc())
+        touching = set(
+            self.connection.execute(
+                select(log.c.change_set_id)
+                .join(touched, (touched.c.record_id == log.c.record_id) & (touched.c.kind == log.c.kind))
+                .where(log.c.change_set_id > target.id)
+            ).scalars()
         )
-        newer = [ChangeSet(*row) for row in rows]
-        newer_ids = {each.id for each in newer}
+        newer = takewhile(lambda each: each.id > target.id, newest_first(self.connection))
         for each in in_force(newer):
             if each.undoes == target.id:
                 raise StoreError(f"change set {target.id} has been undone already")
             # An undo of a newer change set only takes that one out of the way.
-            if each.undoes not in newer_ids:
+            only_clears_the_way = each.undoes is not None and each.undoes > target.id
+            if each.id in touching and not only_clears_the_way:
                 raise StoreError(
                     f"change set {target.id} cannot be undone: {each.by} changed the same record "
                     f"on {each.at:%Y-%m-%d at %H:%M} UTC (change set {each.id}); undo that first"
