@@ -17,8 +17,8 @@ import numpy as np
 
 from planner.checks import FloatArray, FloatLike, checked, like
 from planner.errors import InputError
-from planner.physiology.population import POPULATION
-from planner.physiology.ventilation import target_of
+from planner.physiology.population import POPULATION, Population
+from planner.physiology.ventilation import _target
 
 HOURS_PER_DAY: Final = 24.0
 # Columns of one block: the states and one row of targets stay in the processor's cache.
@@ -76,8 +76,8 @@ def ventilatory_state_at(history: ExposureHistory, at_h: FloatLike) -> FloatLike
         True
     """
     at = np.asarray(at_h, dtype=np.float64)
-    targets = target_of(history.inspired_po2_mmhg, POPULATION)
-    state = first_order_at(history, targets, at, POPULATION.rise_time_d, POPULATION.fall_time_d)
+    targets = _target(history.inspired_po2_mmhg, POPULATION)
+    state = _first_order_at(history, targets, at, POPULATION.rise_time_d, POPULATION.fall_time_d)
     return like(state, at_h)
 
 
@@ -97,7 +97,7 @@ def ventilatory_state_after(
     Valid:
         As ventilatory_state_at.
     Source:
-        As ventilatory_state_at.
+        As ventilatory_state_at (computed, judgement).
     Example:
         >>> ventilatory_state_after(0.2, 149.5, 24.0) < 0.2
         True
@@ -105,9 +105,8 @@ def ventilatory_state_after(
     state = checked("ventilatory_state", ventilatory_state)
     inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
     time = checked("hours", hours)
-    gap = target_of(inspired, POPULATION) - state
-    tau_h = HOURS_PER_DAY * np.where(gap > 0.0, POPULATION.rise_time_d, POPULATION.fall_time_d)
-    return like(state - gap * np.expm1(-time / tau_h), ventilatory_state, inspired_po2_mmhg, hours)
+    after = _relaxed(state, _target(inspired, POPULATION), time / HOURS_PER_DAY, POPULATION)
+    return like(after, ventilatory_state, inspired_po2_mmhg, hours)
 
 
 def evolve(
@@ -126,7 +125,7 @@ def evolve(
     Valid:
         As ventilatory_state_at; exact when the tension is constant within each step.
     Source:
-        As ventilatory_state_at.
+        As ventilatory_state_at (computed, judgement).
     Example:
         >>> evolve(np.zeros(1), np.full((2, 1), 100.0)).shape
         (2, 1)
@@ -143,13 +142,20 @@ def evolve(
         columns = slice(first, first + BLOCK)
         state = start[columns].copy()
         for step in range(len(inspired)):
-            gap = target_of(inspired[step, columns], POPULATION) - state
+            gap = _target(inspired[step, columns], POPULATION) - state
             state += np.where(gap > 0.0, rise[step], fall[step]) * gap
             states[step, columns] = state
     return states
 
 
-def first_order_at(
+def _relaxed(state: FloatArray, target: FloatArray, days: FloatArray, population: Population) -> FloatArray:
+    """The state after some days on the way to a target that stays where it is."""
+    gap = target - state
+    time_d = np.where(gap > 0.0, population.rise_time_d, population.fall_time_d)
+    return np.asarray(target - gap * np.exp(-days / time_d))
+
+
+def _first_order_at(
     history: ExposureHistory, targets: FloatArray, at_h: FloatArray, rise_time_d: float, fall_time_d: float
 ) -> FloatArray:
     """A state that follows the target of each segment, with one time constant up and one down."""

@@ -15,7 +15,7 @@ from planner.physiology.blood import po2_mmhg
 from planner.physiology.normal import _mixture_quantile
 from planner.physiology.person import NEGLIGIBLE_WEIGHT, Latents, PersonPosterior, population_latents
 from planner.physiology.population import POPULATION, Population
-from planner.physiology.ventilation import Chain, Wakefulness, chain_of, is_asleep
+from planner.physiology.ventilation import Wakefulness, _Chain, _chain, _is_asleep
 
 LOW_PROBABILITY: Final = 0.025
 HIGH_PROBABILITY: Final = 0.975
@@ -87,14 +87,14 @@ def expected_spo2(
     inspired = history.inspired_at(flat)
     state = np.asarray(ventilatory_state_at(history, flat))
     latents = population_latents() if person is None else person.latents(device)
-    asleep = is_asleep(wakefulness)
-    nodes, mean, parts = reading_parts(inspired, state, latents, asleep, pressure_sd, POPULATION)
+    asleep = _is_asleep(wakefulness)
+    nodes, mean, parts = _reading_parts(inspired, state, latents, asleep, pressure_sd, POPULATION)
     weight = nodes.weight[:, None]
     centre = (weight * mean).sum(axis=0)
     total_sd = np.sqrt(parts.within_node)
     low = _mixture_quantile(LOW_PROBABILITY, weight, mean, total_sd)
     high = _mixture_quantile(HIGH_PROBABILITY, weight, mean, total_sd)
-    median = chain_of(inspired, state, np.asarray(1.0), asleep=asleep, population=POPULATION)
+    median = _chain(inspired, state, np.asarray(0.0), asleep=asleep, population=POPULATION)
 
     def shaped(values: FloatArray) -> FloatLike:
         return like(values.reshape(at.shape), at_h)
@@ -120,7 +120,7 @@ def expected_spo2(
 
 
 @dataclass(frozen=True)
-class Parts:
+class _Parts:
     """Variances [points squared], (n,): the four parts, and (k, n) the one around each node's mean."""
 
     between_people: FloatArray
@@ -130,24 +130,23 @@ class Parts:
     within_node: FloatArray
 
 
-def reading_parts(
+def _reading_parts(
     inspired: FloatArray,
     state: FloatArray,
     latents: Latents,
     asleep: bool,
     pressure_sd_hpa: FloatArray,
     population: Population,
-) -> tuple[Latents, FloatArray, Parts]:
-    """The mixture that a reading is drawn from: the nodes that count, their means (k, n) and the variances."""
+) -> tuple[Latents, FloatArray, _Parts]:
+    """The mixture that a reading is drawn from: the nodes that count, their means (k, n), the variances."""
     kept = latents.weight > NEGLIGIBLE_WEIGHT
     share = latents.weight[kept] / latents.weight[kept].sum()
     nodes = Latents(
         latents.breathing[kept], share, latents.offset_mean_pct[kept], latents.offset_sd_pct[kept]
     )
-    response = nodes.response(population)[:, None]
-    chain = chain_of(inspired, state, response, asleep=asleep, population=population)
+    chain = _chain(inspired, state, nodes.breathing[:, None], asleep=asleep, population=population)
     mean = chain.saturation + nodes.offset_mean_pct[:, None]
-    day, noise, pressure = scatter_variances(chain, pressure_sd_hpa, population)
+    day, noise, pressure = _scatter_variances(chain, pressure_sd_hpa, population)
     offset = nodes.offset_sd_pct[:, None] ** 2
     within = day + noise + pressure + offset
     weight = share[:, None]
@@ -159,7 +158,7 @@ def reading_parts(
     )
     bias = of_device * float((share * nodes.offset_sd_pct**2).sum())
     people = (weight * (mean - centre) ** 2).sum(axis=0) + (weight * offset).sum(axis=0) - bias
-    parts = Parts(
+    parts = _Parts(
         between_people=people,
         day_to_day=(weight * day).sum(axis=0),
         oximeter=(weight * noise).sum(axis=0) + bias,
@@ -169,8 +168,8 @@ def reading_parts(
     return nodes, mean, parts
 
 
-def scatter_variances(
-    chain: Chain, pressure_sd_hpa: FloatArray, population: Population
+def _scatter_variances(
+    chain: _Chain, pressure_sd_hpa: FloatArray, population: Population
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Variances of one reading around the person's own mean: day to day, oximeter noise, pressure."""
     day = population.day_sd_pct**2 + (population.day_alveolar_sd_mmhg * chain.slope_pct_per_mmhg) ** 2

@@ -26,9 +26,7 @@ def _cumulative(x: FloatArray) -> FloatArray:
     return np.asarray(np.where(x > 0.0, 1.0 - upper, upper))
 
 
-def _mixture_quantile(
-    probability: float, weight: FloatArray, mean: FloatArray, sd: FloatArray
-) -> FloatArray:
+def _mixture_quantile(probability: float, weight: FloatArray, mean: FloatArray, sd: FloatArray) -> FloatArray:
     """Quantile of mixtures of normals: weight (k, 1) or (k, n), mean and sd (k, n); result (n,).
 
     Newton's method kept inside a bracket that each step tightens, so it cannot run away.

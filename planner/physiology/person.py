@@ -1,8 +1,9 @@
 """What is known of one person: the population's spread, sharpened by that person's readings.
 
-Two things differ between people: the breathing response (a factor on the rise of ventilation, log-normal)
-and the venous admixture, seen as the alveolar-arterial difference. A device adds its bias. Admixture and bias
-both shift readings by a constant number of points, so for one device they act as one offset.
+Two things differ between people: how strongly they breathe (a factor on the rise of ventilation, log-normal,
+and with it the PaCO2 at sea level) and the venous admixture, seen as the alveolar-arterial difference. A
+device adds its bias. Admixture and bias both shift readings by a constant number of points, so for one device
+they act as one offset.
 """
 
 from __future__ import annotations
@@ -27,19 +28,15 @@ NEGLIGIBLE_WEIGHT: Final = 1e-7
 class Latents:
     """What is believed of one person read with one device.
 
-    `breathing` (k,) nodes in population standard deviations of ln(response), `weight` (k,) that sum to 1,
-    `offset_mean_pct` and `offset_sd_pct` (k,) of the offset (device bias less admixture's deviation) at each
-    node, in points of saturation.
+    `breathing` (k,) nodes of how strongly the person breathes in standard deviations between people, `weight`
+    (k,) that sum to 1, `offset_mean_pct` and `offset_sd_pct` (k,) of the offset (device bias less admixture's
+    deviation) at each node, in points of saturation.
     """
 
     breathing: FloatArray
     weight: FloatArray
     offset_mean_pct: FloatArray
     offset_sd_pct: FloatArray
-
-    def response(self, population: Population = POPULATION) -> FloatArray:
-        """Breathing response of each node over the population's median [1]."""
-        return np.asarray(np.exp(population.breathing_sd * self.breathing))
 
 
 @dataclass(frozen=True)

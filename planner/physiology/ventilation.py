@@ -1,14 +1,15 @@
 """How breathing answers thin air: from inspired oxygen and the state of acclimatisation to arterial blood.
 
-The model in five sentences. What drives breathing is the inspired oxygen missing against sea level. Alveolar
-ventilation rises, once acclimatised, in proportion to it (the target); a share of the gap between target and
-state is answered within minutes by the carotid bodies, the more the thinner the air; the state moves to the
-target over days. PaCO2 follows from ventilation by the alveolar ventilation equation, pH from PaCO2 by
-Henderson-Hasselbalch with little buffering of what came within minutes and the kidneys' compensation of what
-the state has made lasting. Alveolar oxygen follows from the full alveolar gas equation. Arterial saturation is
-that of blood in balance with the alveoli less a venous admixture, constant in points of saturation at rest
-(shunt fraction times the oxygen taken from the blood), so the alveolar-arterial difference in mmHg is large
-at sea level and small on the steep part of the curve, as measured.
+What drives breathing is the inspired oxygen missing against sea level. Once acclimatised, PaCO2 has fallen in
+proportion to it: that sets the target of alveolar ventilation. Of the gap between target and state a share is
+answered within minutes by the carotid bodies, the more the thinner the air (a hyperbola, as their response
+is); the state itself moves to the target over days. PaCO2 follows by the alveolar ventilation equation, pH by
+Henderson-Hasselbalch, with little buffering of what came within minutes and the kidneys' compensation of what
+the state has made lasting. Alveolar oxygen follows from the full alveolar gas equation, in which the
+respiratory quotient is higher while breathing is still answering. Arterial saturation is that of blood in
+balance with the alveoli less a venous admixture, constant in points of saturation at rest (shunt fraction
+times the oxygen taken from the blood), so the alveolar-arterial difference in mmHg is large at sea level and
+small on the steep part of the curve, as measured.
 """
 
 from __future__ import annotations
@@ -32,10 +33,14 @@ REFERENCE_INSPIRED_PO2_MMHG: Final = float(inspired_from_pressure(SEA_LEVEL_PRES
 # Henderson-Hasselbalch at 37 C: pK 6.1 and the solubility of CO2 (published, every textbook).
 PK: Final = 6.1
 CO2_SOLUBILITY_MMOL_L_PER_MMHG: Final = 0.0307
+# Bicarbonate that makes pH 7.40 with each person's own PaCO2 at sea level.
+SEA_LEVEL_BICARBONATE_PER_MMHG: Final = 10.0 ** (STANDARD_PH - PK) * CO2_SOLUBILITY_MMOL_L_PER_MMHG
 # Fall of bicarbonate per mmHg of PaCO2 lost within minutes, by the buffers alone (from memory: 2 mmol/L per
 # 10 mmHg, the textbook rule for acute respiratory alkalosis).
 ACUTE_BUFFERING: Final = 0.2
-LOWEST_ALVEOLAR_PO2_MMHG: Final = 1.0  # keeps the chain finite where nobody lives
+# Both keep the chain finite where nobody lives.
+LOWEST_ALVEOLAR_PO2_MMHG: Final = 1.0
+LARGEST_PACO2_FALL: Final = 0.8
 
 
 @dataclass(frozen=True)
@@ -56,7 +61,7 @@ class ArterialGases:
 
 
 @dataclass(frozen=True)
-class Chain:
+class _Chain:
     """The same inside, without the arterial tension, plus the slope of saturation by inspired oxygen."""
 
     ventilation: FloatArray
@@ -77,7 +82,7 @@ def ventilatory_target(inspired_po2_mmhg: FloatLike) -> FloatLike:
     Raises:
         InputError: a tension out of range.
     Valid:
-        75 to 150 mmHg, the fit's data; linear below. Lifelong highlanders may breathe less.
+        75 to 150 mmHg, the fit's data. Lifelong highlanders may breathe less.
     Source:
         Fitted (computed) to residents' and by-day PaCO2; see population_model_summary.
     Example:
@@ -85,7 +90,7 @@ def ventilatory_target(inspired_po2_mmhg: FloatLike) -> FloatLike:
         0.0
     """
     inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
-    return like(target_of(inspired, POPULATION), inspired_po2_mmhg)
+    return like(_target(inspired, POPULATION), inspired_po2_mmhg)
 
 
 def acute_share(inspired_po2_mmhg: FloatLike) -> FloatLike:
@@ -100,19 +105,20 @@ def acute_share(inspired_po2_mmhg: FloatLike) -> FloatLike:
     Valid:
         75 to 150 mmHg, the fit's data.
     Source:
-        A logistic curve, fitted (computed) to PaCO2 and saturation on arrival; its shape is judgement.
+        A hyperbola after Weil et al. 1970, J Clin Invest 49:1061 (from memory), here in inspired oxygen;
+        constants fitted (computed) to PaCO2 and saturation on arrival.
     Example:
-        >>> acute_share(150.0) < 0.01
+        >>> acute_share(150.0) < 0.1
         True
     """
     inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
-    return like(share_of(inspired, POPULATION), inspired_po2_mmhg)
+    return like(_share(inspired, POPULATION), inspired_po2_mmhg)
 
 
 def arterial_gases(
     inspired_po2_mmhg: FloatLike,
     ventilatory_state: FloatLike,
-    breathing_response: FloatLike = 1.0,
+    breathing: FloatLike = 0.0,
     wakefulness: Wakefulness = "awake",
 ) -> ArterialGases:
     """Arterial blood at rest for a state of acclimatisation.
@@ -120,7 +126,8 @@ def arterial_gases(
     Parameters:
         inspired_po2_mmhg: oxygen tension of moist inspired gas [mmHg], scalar or array.
         ventilatory_state: lasting rise of alveolar ventilation of the population [1], scalar or array.
-        breathing_response: the person's response over the population's median [1], scalar or array.
+        breathing: how strongly the person breathes, in standard deviations between people [1], scalar or
+            array.
         wakefulness: "awake" or "asleep" [word].
     Returns:
         ArterialGases, each field in the common shape of the inputs.
@@ -136,9 +143,9 @@ def arterial_gases(
     """
     inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
     state = checked("ventilatory_state", ventilatory_state)
-    response = checked("breathing_response", breathing_response)
-    chain = chain_of(inspired, state, response, asleep=is_asleep(wakefulness), population=POPULATION)
-    given = (inspired_po2_mmhg, ventilatory_state, breathing_response)
+    strength = checked("breathing", breathing)
+    chain = _chain(inspired, state, strength, asleep=_is_asleep(wakefulness), population=POPULATION)
+    given = (inspired_po2_mmhg, ventilatory_state, breathing)
     arterial = po2_mmhg(chain.saturation, chain.ph)
     return ArterialGases(
         alveolar_ventilation=like(1.0 + chain.ventilation, *given),
@@ -150,53 +157,45 @@ def arterial_gases(
     )
 
 
-def is_asleep(wakefulness: str) -> bool:
-    """Whether the word says asleep.
-
-    Parameters:
-        wakefulness: "awake" or "asleep" [word].
-    Returns:
-        True for "asleep" [1].
-    Raises:
-        InputError: any other word.
-    Valid:
-        The two words.
-    Source:
-        None needed.
-    """
+def _is_asleep(wakefulness: str) -> bool:
     if wakefulness not in ("awake", "asleep"):
         raise InputError("wakefulness", wakefulness, "awake or asleep")
     return wakefulness == "asleep"
 
 
-def target_of(inspired: FloatArray, population: Population) -> FloatArray:
+def _target(inspired: FloatArray, population: Population) -> FloatArray:
     missing = np.maximum(REFERENCE_INSPIRED_PO2_MMHG - inspired, 0.0)
-    return np.asarray(population.ventilation_gain_per_mmhg * missing)
+    # PaCO2 over sea level's is 1 - fall; ventilation goes with its inverse.
+    fall = np.minimum(population.paco2_fall_per_mmhg * missing, LARGEST_PACO2_FALL)
+    return np.asarray(fall / (1.0 - fall))
 
 
-def share_of(inspired: FloatArray, population: Population) -> FloatArray:
-    steps = (inspired - population.acute_half_mmhg) / population.acute_width_mmhg
-    return np.asarray(1.0 / (1.0 + np.exp(np.minimum(steps, 500.0))))
+def _share(inspired: FloatArray, population: Population) -> FloatArray:
+    above = np.maximum(inspired - population.acute_asymptote_mmhg, 0.0)
+    return np.asarray(population.acute_half_mmhg / (population.acute_half_mmhg + above))
 
 
-def chain_of(
-    inspired: FloatArray, state: FloatArray, response: FloatArray, *, asleep: bool, population: Population
-) -> Chain:
+def _chain(
+    inspired: FloatArray, state: FloatArray, breathing: FloatArray, *, asleep: bool, population: Population
+) -> _Chain:
     """The chain on arrays without guards: the one place where it is written down."""
-    gap = np.maximum(target_of(inspired, population) - state, 0.0)
+    gap = np.maximum(_target(inspired, population) - state, 0.0)
+    response = np.exp(population.breathing_sd * breathing)
+    sea_level_paco2 = population.sea_level_paco2_mmhg - population.setpoint_sd_mmhg * breathing
     lasting = response * state
-    ventilation = response * (state + share_of(inspired, population) * gap)
-    paco2_awake = population.sea_level_paco2_mmhg / (1.0 + ventilation)
-    lasting_paco2 = population.sea_level_paco2_mmhg / (1.0 + lasting)
-    rise = population.sleep_paco2_rise_mmhg if asleep else 0.0
-    paco2 = paco2_awake + rise
+    ventilation = response * (state + _share(inspired, population) * gap)
+    lasting_paco2 = sea_level_paco2 / (1.0 + lasting)
+    paco2 = sea_level_paco2 / (1.0 + ventilation)
+    if asleep:
+        paco2 = paco2 + population.sleep_paco2_rise_mmhg
     bicarbonate = (
-        _sea_level_bicarbonate(population)
-        - population.chronic_buffering * (population.sea_level_paco2_mmhg - lasting_paco2)
+        SEA_LEVEL_BICARBONATE_PER_MMHG * sea_level_paco2
+        - population.chronic_buffering * (sea_level_paco2 - lasting_paco2)
         - ACUTE_BUFFERING * (lasting_paco2 - paco2)
     )
     ph = PK + np.log10(bicarbonate / (CO2_SOLUBILITY_MMOL_L_PER_MMHG * paco2))
-    exchanged = AIR_OXYGEN_FRACTION + (1.0 - AIR_OXYGEN_FRACTION) / population.respiratory_quotient
+    quotient = population.respiratory_quotient + population.quotient_rise * gap
+    exchanged = AIR_OXYGEN_FRACTION + (1.0 - AIR_OXYGEN_FRACTION) / quotient
     alveolar = np.maximum(inspired - exchanged * paco2, LOWEST_ALVEOLAR_PO2_MMHG)
     bohr = (alveolar / 26.6) ** 0.184 - 2.2
     standard = alveolar * np.exp(-bohr * (ph - STANDARD_PH))
@@ -205,11 +204,4 @@ def chain_of(
     saturation = np.maximum(100.0 * capillary - population.venous_admixture_pct, 0.0)
     by_tension = (3.0 * standard * standard + LINEAR) / content * capillary * (1.0 - capillary)
     slope = 100.0 * by_tension * standard / alveolar
-    return Chain(ventilation, paco2, ph, alveolar, saturation, slope)
-
-
-def _sea_level_bicarbonate(population: Population) -> float:
-    """Bicarbonate [mmol/L] that makes pH 7.40 at the sea-level PaCO2."""
-    return float(
-        10.0 ** (STANDARD_PH - PK) * CO2_SOLUBILITY_MMOL_L_PER_MMHG * population.sea_level_paco2_mmhg
-    )
+    return _Chain(ventilation, paco2, ph, alveolar, saturation, slope)
