@@ -18,7 +18,7 @@ from planner.physiology.sweat import RANGE_SD, SweatPrediction, nine_of_ten
 
 # Judgement: from one session to the next the same driver differs from his own ratio by so much.
 SESSION_SCATTER: Final = 0.07
-# How a driver's weighings scatter in fact is mixed with the stated errors, which count as so many (judgement).
+# How a driver's weighings scatter is mixed with the stated errors, which count as so many (judgement).
 STATED_ERRORS_COUNT: Final = 4.0
 # A stated range is never narrower than this share either way, however many weighings (judgement).
 NARROWEST: Final = 0.06
@@ -61,7 +61,7 @@ class Learned:
     @property
     def own_share(self) -> FloatArray:
         """Share of the population's variance that the weighings have removed, 0 to 1."""
-        return 1.0 - (self.log_sd / self.prior_log_sd) ** 2
+        return np.maximum(1.0 - (self.log_sd / self.prior_log_sd) ** 2, 0.0)
 
 
 def prior_log_sd(prediction: SweatPrediction) -> FloatArray:
@@ -109,7 +109,8 @@ def learn_ratio(evidence: Evidence, expected_l_per_h: FloatArray, prior_sd: Floa
             break
     number = used.sum(axis=-1).astype(np.float64)
     misfit = (weight * (measured - slope) ** 2).sum(axis=-1)
-    scatter = (STATED_ERRORS_COUNT + misfit) / (STATED_ERRORS_COUNT + np.maximum(number - 1.0, 0.0))
+    # One more taken off than for the ratio itself: few weighings leave their own scatter unsure.
+    scatter = (STATED_ERRORS_COUNT + misfit) / (STATED_ERRORS_COUNT + np.maximum(number - 2.0, 0.0))
     from_weighings = (curvature - prior_precision) / np.where(number > 1.0, scatter, 1.0)
     return Learned(
         ratio=np.exp(log_ratio),

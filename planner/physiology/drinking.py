@@ -173,7 +173,7 @@ def mass_lost_kg(sweat_rate_l_per_h: Range, session_hours: FloatLike, drunk_ml: 
     """
     rates = checked_range("sweat_rate_l_per_h", sweat_rate_l_per_h)
     hours = checked("session_hours", session_hours)
-    drunk_l = checked("drink_ml", drunk_ml, "drunk_ml") / 1000.0
+    drunk_l = checked("planned_drink_ml", drunk_ml, "drunk_ml") / 1000.0
     given = (*rates, session_hours, drunk_ml)
     low, best, high = (like(np.maximum(rate * hours - drunk_l, 0.0), *given) for rate in rates)
     return Range(low, best, high)

@@ -146,7 +146,7 @@ def predicted_sweat(
         Gonzalez et al. 2009, J Appl Physiol 107:379, and caps of ISO 7933:2023 (published); the way the
         ranges are added: judgement.
     """
-    surface = np.asarray(body_surface_area_m2(mass_kg, height_cm))
+    surface = np.asarray(body_surface_area_m2(mass_kg, height_cm)) / 1000.0  # per m2 and g to L
     pressure = checked("pressure_hpa", pressure_hpa)
     air = checked_range("air_temperature_c", inputs.air_temperature_c)
     radiant = checked_range("radiant_temperature_c", inputs.radiant_temperature_c)
@@ -157,9 +157,6 @@ def predicted_sweat(
     permeable = checked_range("permeability", inputs.permeability)
     exponent = checked_range("altitude_exponent", inputs.altitude_exponent)
     ranges = (air, radiant, humidity, speed, metabolic, clo, permeable, exponent)
-    shape = np.broadcast_shapes(
-        surface.shape, pressure.shape, *(part.shape for each in ranges for part in each)
-    )
 
     humidity_when_cooler = np.asarray(humidity_in_warmer_air_pct(humidity[1], air[1], air[0]))
     humidity_when_hotter = np.asarray(humidity_in_warmer_air_pct(humidity[1], air[1], air[2]))
@@ -170,22 +167,23 @@ def predicted_sweat(
     ]
     for position in range(2, len(ranges)):
         ends += [(*best[:position], ranges[position][end], *best[position + 1 :]) for end in (0, 2)]
-    # One call over a leading axis: the best figures first, then the pairs of ends.
-    stacked = [
-        np.stack([np.broadcast_to(variant[i], shape) for variant in (best, *ends)])
-        for i in range(len(ranges))
-    ]
+    # One call over a leading axis: the best figures first, then the pairs of ends. The balance is per body
+    # surface, so the people come in only afterwards.
+    shape = np.broadcast_shapes(pressure.shape, *(part.shape for each in ranges for part in each))
+    stacked = [np.empty((1 + len(ends), *shape)) for _ in ranges]
+    for row, variant in enumerate((best, *ends)):
+        for each, value in zip(stacked, variant, strict=True):
+            each[row] = value
     balance = heat_balance(*stacked[:7], pressure_hpa=pressure, altitude_exponent=stacked[7])
     required = np.asarray(balance.required_w_m2)
     maximal = np.asarray(balance.maximal_w_m2)
-    rate = _gonzalez_g_m2_h(required, maximal) * surface / 1000.0
-    highest = sweat_cap_g_m2_h(acclimatised) * surface / 1000.0
+    sweat = _gonzalez_g_m2_h(required, maximal)
 
-    spans = np.abs(rate[2::2] - rate[1::2]) / (2.0 * ENDS_SD)
+    spans = np.abs(sweat[2::2] - sweat[1::2]) / (2.0 * ENDS_SD)
     conditions_sd = np.sqrt((spans[:3] ** 2).sum(axis=0))
-    scatter = GONZALEZ_SEE_G_M2_H * surface / 1000.0
-    person_sd = np.sqrt((spans[3:] ** 2).sum(axis=0) + scatter**2)
-    expected = np.minimum(rate[0], highest)
+    person_sd = np.sqrt((spans[3:] ** 2).sum(axis=0) + GONZALEZ_SEE_G_M2_H**2)
+    highest = sweat_cap_g_m2_h(acclimatised)
+    expected = np.minimum(sweat[0], highest)
     low, high = nine_of_ten(expected, np.hypot(person_sd, conditions_sd))
     beyond = (best[0] < GONZALEZ_COOLEST_C) | (best[0] > GONZALEZ_HOTTEST_C) | (best[5] > ISO_THICKEST_CLO)
 
@@ -194,11 +192,13 @@ def predicted_sweat(
         required_w_m2=like(required[0], *given),
         maximal_w_m2=like(maximal[0], *given),
         sweat_rate_l_per_h=Range(
-            like(low, *given), like(expected, *given), like(np.minimum(high, highest), *given)
+            like(low * surface, *given),
+            like(expected * surface, *given),
+            like(np.minimum(high, highest) * surface, *given),
         ),
-        person_sd_l_per_h=like(person_sd, *given),
-        conditions_sd_l_per_h=like(conditions_sd, *given),
-        beyond_validity=like(np.broadcast_to(beyond, shape).astype(np.float64), *given),
+        person_sd_l_per_h=like(person_sd * surface, *given),
+        conditions_sd_l_per_h=like(conditions_sd * surface, *given),
+        beyond_validity=like(np.where(beyond, 1.0, 0.0), *given),
     )
 
 
