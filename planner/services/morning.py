@@ -35,6 +35,7 @@ RowOutcome: TypeAlias = Outcome | Literal["not measured"]
 
 ORDER: Final[tuple[RowOutcome, ...]] = ("urgent", "refer", "repeat", "in range", "not measured")
 MORNINGS_SHOWN: Final = 10
+CLOCKS_DIFFER: Final = timedelta(minutes=2)  # a telephone may be ahead of this machine: judgement
 MORNING_AT: Final = time(7)  # when a morning's range is drawn for, local: judgement
 UTC: Final = ZoneInfo("UTC")
 
@@ -96,7 +97,7 @@ def this_morning(store: Store, at: datetime) -> ThisMorning:
     """Who needs what at an instant."""
     calendar = read_calendar(store)
     since = at - timedelta(days=MORNINGS_SHOWN + 1)
-    readings = store.readings(since=since, until=at + timedelta(microseconds=1))
+    readings = store.readings(since=since, until=at + CLOCKS_DIFFER)
     sick = [s for s in store.all(SickPeriod) if s.starts_at <= at]
     notices = [n for n in store.all(Notice) if at - timedelta(hours=24) < n.at <= at]
     rows = []

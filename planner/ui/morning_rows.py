@@ -9,7 +9,7 @@ from planner.charts.theme import OUTCOME_STYLES
 from planner.monitoring.model import Notice
 from planner.services.morning import DriverRow
 from planner.ui.text import escaped
-from planner.wording import DASH, age, clock, per_cent, pulse
+from planner.wording import DASH, age, clock, day, day_and_clock, per_cent, pulse
 
 
 def outcome_html(outcome: str) -> str:
@@ -33,7 +33,7 @@ def row_html(row: DriverRow, now: datetime, *, low_pct: float, elsewhere: bool) 
         f"{place}</div>"
         f'<div class="p-number"><div class="p-value">{escaped(_value(row))}</div>'
         f"{_when(row, now)}</div>"
-        f'<div class="p-wide"><div class="p-why">{_reasons(row)}</div>{_notices(row)}</div>'
+        f'<div class="p-wide"><div class="p-why">{_reasons(row)}</div>{_notices(row, now)}</div>'
         f'<div class="p-wide">{strip(row.mornings, low_pct)}</div>'
         "</div>"
     )
@@ -64,12 +64,16 @@ def _reasons(row: DriverRow) -> str:
     return f'{text} <span class="p-do">{escaped(row.advice)}</span>' if row.advice else text
 
 
-def _notices(row: DriverRow) -> str:
-    return "".join(f'<div class="p-small">{escaped(notice_words(n, row.zone))}</div>' for n in row.notices)
+def _notices(row: DriverRow, now: datetime) -> str:
+    return "".join(
+        f'<div class="p-small">{escaped(notice_words(n, row.zone, now))}</div>' for n in row.notices
+    )
 
 
-def notice_words(notice: Notice, zone: str) -> str:
-    """As "Physician told at 07:40 (coach): called Dr."."""
+def notice_words(notice: Notice, zone: str, now: datetime) -> str:
+    """As "Physician told 07:40 (coach): sees her at 9"; with the day when it was not today."""
     what = "Physician told" if notice.kind == "told the physician" else "Note"
     by = f" ({notice.entered_by})" if notice.entered_by else ""
-    return f"{what} at {clock(notice.at, zone)}{by}" + (f": {notice.text}" if notice.text else "")
+    today = day(notice.at, zone) == day(now, zone)
+    when = clock(notice.at, zone) if today else day_and_clock(notice.at, zone)
+    return f"{what} {when}{by}" + (f": {notice.text}" if notice.text else "")

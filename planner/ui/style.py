@@ -16,7 +16,7 @@ button[data-testid^="stBaseButton-primary"],
 button[data-testid^="stBaseButton-primary"] *{color:var(--on-accent)}
 button[data-testid="stBaseButton-tertiary"],
 [data-testid="stPopover"] button[kind="tertiary"]{color:var(--accent)}
-[class*="st-key-p-card-"]{padding:.6rem .9rem .5rem}
+[class*="st-key-p-card-"]{padding:.6rem .9rem .5rem;background:var(--surface);margin-bottom:-.4rem}
 [class*="st-key-p-acts-"]{gap:0}
 [class*="st-key-p-acts-"] button{min-height:1.75rem;padding:0}
 [data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
@@ -39,7 +39,10 @@ button[data-testid="stBaseButton-tertiary"],
 .p-small{font-size:.8125rem;color:var(--muted);line-height:1.4}
 .p-why{font-size:.9375rem;line-height:1.4}
 .p-do{font-weight:600}
+.st-key-p-type,.st-key-p-import{max-width:48rem}
+.p-kept{border-left:3px solid var(--accent);padding:.15rem .75rem;font-size:.9375rem}
 @media (max-width:640px){
+ [data-testid="stButtonGroup"] button{min-height:2.5rem}
  [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem}
  [class*="st-key-p-acts-"] button{min-height:2.75rem}
  .stMainBlockContainer{padding-left:.875rem;padding-right:.875rem}

@@ -1,0 +1,48 @@
+"""Readings: get it in, right."""
+
+from __future__ import annotations
+
+import streamlit as st
+
+from planner.ui.cached import morning_of
+from planner.ui.errors import plain_errors
+from planner.ui.page import Context, answer, end_page, line, start_page
+from planner.ui.reading_corrections import draw_corrections
+from planner.ui.reading_entry import draw_entry
+from planner.ui.reading_import import draw_import
+from planner.wording import counted
+
+PARTS = {"Type": draw_entry, "Import": draw_import, "Correct": draw_corrections}
+
+
+def say_where_we_are(ctx: Context) -> bool:
+    """The first line: how many are measured; returns whether there is anybody to measure."""
+    rows = morning_of(ctx).rows
+    if not rows:
+        answer("No drivers yet. Add the first one on Team, then type a reading here.")
+        return False
+    waiting = [row.driver for row in rows if row.outcome == "not measured"]
+    answer(f"{len(rows) - len(waiting)} of {counted(len(rows), 'driver')} measured today.")
+    line(f"Not yet: {', '.join(waiting)}." if waiting else "Everybody is measured.")
+    return True
+
+
+def main() -> None:
+    """Draw the page."""
+    ctx = start_page("Readings")
+    if say_where_we_are(ctx):
+        part = st.segmented_control(
+            "What to do",
+            list(PARTS),
+            default="Type",
+            required=True,
+            label_visibility="collapsed",
+            key="readings_part",
+            persist_state="session",
+        )
+        with plain_errors(), st.container(key=f"p-{(part or 'Type').lower()}"):
+            PARTS[part or "Type"](ctx)
+    end_page(ctx)
+
+
+main()
