@@ -47,6 +47,7 @@ def read_records(kind: FileKind[R], data: bytes, file: str, context: FileContext
     records: list[R] = []
     lines: list[int] = []
     refused = list(table.refused)
+    order = {column.name: number for number, column in enumerate(kind.columns)}
     for row in table.rows:
         line = Line(row, file, table.decimal_comma, context.now)
         for column in kind.columns:
@@ -55,7 +56,7 @@ def read_records(kind: FileKind[R], data: bytes, file: str, context: FileContext
         record = kind.take(line, context)
         line.note(kind.problems(record))
         if line.faults:
-            refused += line.faults
+            refused += sorted(line.faults, key=lambda fault: order[fault.field])
         else:
             records.append(record)
             lines.append(row.line)

@@ -55,11 +55,12 @@ class Line:
 
     def note(self, problems: Iterable[InputError]) -> None:
         """Note what the domain finds wrong with the record; cells refused already are not named again."""
-        refused = {fault.field for fault in self.faults}
-        for problem in problems:
-            column = problem.field.removesuffix("_id")
-            if column not in refused:
-                self.refuse(column, problem.expected)
+        by_column = {problem.field.removesuffix("_id"): problem for problem in problems}
+        for column in sorted(by_column, key=self.given, reverse=True):
+            refused = {fault.field for fault in self.faults}
+            # What is wrong with a value that stands in for an empty cell follows from another cell.
+            if column not in refused and (self.given(column) or not refused):
+                self.refuse(column, by_column[column].expected)
 
     def given(self, column: str) -> bool:
         """Tell whether the cell is there and filled."""

@@ -22,7 +22,7 @@ Cell: TypeAlias = str | float | bool | date | datetime | None
 
 SEPARATORS: Final = (",", ";", "\t")
 # A spreadsheet takes a cell that starts with one of these for a formula; # would be read back as a comment.
-_UNSAFE_START: Final = re.compile(r"'*[=+\-@\t\r#]")
+_UNSAFE_START: Final = re.compile(r"'*[=+\-@\t#]")
 _HEADER: Final = "header"
 
 
@@ -139,11 +139,11 @@ def write_table(columns: Sequence[Column], rows: Iterable[Mapping[str, Cell]], h
 
 
 def cell_text(value: Cell) -> str:
-    """Return a cell as it is written: text is made safe for spreadsheets, numbers keep every digit."""
+    """Return a cell as it is written: text made safe for spreadsheets, its line ends plain; numbers exact."""
     if value is None:
         return ""
     if isinstance(value, str):
-        return protected(value.strip())
+        return protected(value.strip().replace("\r\n", "\n").replace("\r", "\n"))
     if isinstance(value, bool):
         return "yes" if value else "no"
     if isinstance(value, date):  # a datetime is one, too
