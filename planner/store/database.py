@@ -17,12 +17,36 @@ from planner.errors import PlannerError, StoreError
 # Written into the file's header, so that a database of another program is recognised ("plan" as four bytes).
 APPLICATION_ID = int.from_bytes(b"plan", "big")
 
+# The first bytes of every SQLite file (https://www.sqlite.org/fileformat.html, 1.3).
+FILE_MARK = b"SQLite format 3\0"
+
 # How long a writer waits for another one. Writes take milliseconds; a large import some seconds.
 BUSY_TIMEOUT_S = 60.0
 
 # A page's script uses one connection at a time; more threads than this wait for their turn.
 CONNECTIONS_KEPT = 8
 CONNECTIONS_MORE = 24
+
+
+def prepare_path(path: Path) -> None:
+    """Make the folder and the file, and make sure that nothing else lies at the path: SQLite itself would take a short
+    text for an empty database and write over it.
+
+    Raises: StoreError.
+    """
+    try:
+        if path.is_dir():
+            raise StoreError(f"{path}: this is a folder; name a file")
+        path.parent.mkdir(parents=True, exist_ok=True)
+        if not path.exists():
+            path.touch(mode=0o600)  # health records: nobody else on this machine reads them
+        else:
+            with path.open("rb") as file:
+                mark = file.read(len(FILE_MARK))
+            if mark not in (b"", FILE_MARK):
+                raise StoreError(f"{path}: this is not a database of this program")
+    except OSError as error:
+        raise StoreError(f"{path}: cannot be opened or made ({error.strerror})") from error
 
 
 def create_database_engine(path: Path) -> Engine:

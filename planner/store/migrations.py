@@ -68,16 +68,17 @@ def version_of(connection: Connection, newest: int) -> int:
 
     Raises: StoreError when it is not ours, or was made by more than `newest` migrations.
     """
+    file = connection.engine.url.database
     application_id = int(connection.exec_driver_sql("PRAGMA application_id").scalar_one())
     version = int(connection.exec_driver_sql("PRAGMA user_version").scalar_one())
     if application_id != APPLICATION_ID:
         tables = int(connection.exec_driver_sql("SELECT count(*) FROM sqlite_schema").scalar_one())
         if application_id == 0 and version == 0 and tables == 0:
             return 0
-        raise StoreError("this is a database of another program; choose another file")
+        raise StoreError(f"{file}: this is a database of another program; choose another file")
     if version > newest:
         raise StoreError(
-            f"this database has version {version}, this program knows {newest}: update the program"
+            f"{file}: this database has version {version}, this program knows {newest}: update the program"
         )
     return version
 

@@ -24,7 +24,7 @@ from planner.record_checks import name as name_problem
 from planner.record_checks import text as text_problem
 from planner.store import history, schema, upkeep
 from planner.store.bulk import held_before, reading_columns
-from planner.store.database import create_database_engine, plain_errors, reading, writing
+from planner.store.database import create_database_engine, plain_errors, prepare_path, reading, writing
 from planner.store.history import Change, ChangeSet
 from planner.store.migrations import migrate
 from planner.store.records import R, columns, kind_of, record_from
@@ -52,12 +52,7 @@ class Store:
         Raises: StoreError when it cannot be opened, is another program's or a newer version's, or is damaged.
         """
         path = Path(path).expanduser().absolute()
-        if path.is_dir():
-            raise StoreError(f"{path}: this is a folder; name a file")
-        try:
-            path.parent.mkdir(parents=True, exist_ok=True)
-        except OSError as error:
-            raise StoreError(f"{path.parent}: the folder cannot be made ({error.strerror})") from error
+        prepare_path(path)
         engine = create_database_engine(path)
         try:
             with plain_errors(path):

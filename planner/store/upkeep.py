@@ -25,24 +25,22 @@ def backup(engine: Engine, live: Path, target: Path) -> None:
 
     Raises: StoreError when the target is the live database, another program's file, or cannot be written.
     """
-    _refuse_target(live, target)
     try:
-        handle, name = tempfile.mkstemp(prefix=f".{target.name}-", suffix=".part", dir=target.parent)
+        _refuse_target(live, target)
+        handle, name = tempfile.mkstemp(prefix=".backup-", suffix=".part", dir=target.parent)
         os.close(handle)
-    except OSError as error:
-        raise StoreError(f"{target}: no backup can be written there ({error.strerror})") from error
-    part = Path(name)
-    try:
-        _copy(engine, part)
-        _to_disk(part)
-        os.replace(part, target)
-        _to_disk(target.parent)
+        part = Path(name)
+        try:
+            _copy(engine, part)
+            _to_disk(part)
+            os.replace(part, target)
+            _to_disk(target.parent)
+        finally:
+            part.unlink(missing_ok=True)
     except OSError as error:
         raise StoreError(f"{target}: the backup could not be written ({error.strerror})") from error
     except sqlite3.Error as error:
         raise StoreError(f"{target}: the backup could not be written: {plain_words(error)}") from error
-    finally:
-        part.unlink(missing_ok=True)
 
 
 def _refuse_target(live: Path, target: Path) -> None:
@@ -51,10 +49,10 @@ def _refuse_target(live: Path, target: Path) -> None:
     beside_live = {live.resolve().with_name(live.name + end) for end in ("", "-wal", "-shm", "-journal")}
     if target.resolve() in beside_live or (target.exists() and target.samefile(live)):
         raise StoreError(f"{target}: this is the database in use; choose another file for the backup")
-    if target.exists() and target.stat().st_size > 0 and _application_id(target) != APPLICATION_ID:
-        raise StoreError(f"{target}: this file is not a backup of this program; choose another name")
     if target.with_name(target.name + "-wal").exists():
         raise StoreError(f"{target}: this is a database that is open; choose another file for the backup")
+    if target.exists() and target.stat().st_size > 0 and _application_id(target) != APPLICATION_ID:
+        raise StoreError(f"{target}: this file is not a backup of this program; choose another name")
 
 
 def _application_id(path: Path) -> int:
