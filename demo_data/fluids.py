@@ -10,26 +10,21 @@ from datetime import timedelta
 from typing import Final
 from zoneinfo import ZoneInfo
 
+from demo_data.nature import sweat_l_per_h
 from demo_data.readings import ILL_TODAY
 from demo_data.world import NOW, NOW_ROUND, PLACE_BY_ID, ROUNDS, SESSIONS, TODAY, generator
 from planner.hydration.model import CockpitConditions, MorningMark, Weighing
 from planner.monitoring.model import Reading
-from planner.physiology.air import site_pressure
-from planner.physiology.ranges import Range
-from planner.physiology.sweat import HeatInputs, predicted_sweat
 from planner.season.model import Driver, Session
 
 FIRST_WEIGHED_ROUND: Final = NOW_ROUND - 3
 FIRST_MARK: Final = TODAY - timedelta(weeks=5)
 
-# The driver's own sweat rate over the predicted one, and what is drunk of it.
+# The driver's own sweat rate over the average one, and what is drunk of it.
 SWEAT_RATIO: Final = {1: 0.85, 2: 1.05, 3: 0.95, 4: 1.10, 5: 0.80, 6: 1.35, 7: 1.00, 8: 0.75}
 DRUNK_SHARE: Final = {1: 0.70, 2: 0.65, 3: 0.75, 4: 0.55, 5: 0.80, 6: 0.12, 7: 1.40, 8: 0.70}
 UNDER_DRINKS: Final = 6
 
-METABOLIC_W_M2: Final = 230.0
-SUIT_CLO: Final = 1.56
-SUIT_PERMEABILITY: Final = 0.34
 ENSEMBLE: Final = "racing overalls, whole ensemble"
 BREATH_KG_PER_H: Final = 0.06
 WEIGHED_AROUND: Final = timedelta(minutes=6)  # before the start and after the end of a session
@@ -87,7 +82,8 @@ def _weighing(driver: Driver, session: Session, conditions: CockpitConditions) -
     random = generator(f"weighing {session.id}", driver.id)
     starts_at, ends_at = session.starts_at - WEIGHED_AROUND, session.ends_at + WEIGHED_AROUND
     hours = (ends_at - starts_at) / timedelta(hours=1)
-    sweat_l = _sweat_rate_l_per_h(driver, session, conditions) * hours * (1.0 + 0.06 * random.normal())
+    average_l_per_h = sweat_l_per_h(driver, conditions.air_temperature_c, conditions.humidity_pct)
+    sweat_l = average_l_per_h * SWEAT_RATIO[driver.id] * hours * (1.0 + 0.06 * random.normal())
     bottle_ml = driver.bottle_ml * (2.0 if hours > 1.5 else 1.0)  # a race has a stop for a second one
     drink_ml = min(round(sweat_l * 1000.0 * DRUNK_SHARE[driver.id] / 50.0) * 50.0, bottle_ml)
     urine_ml = 150.0 if random.random() < 0.15 else 0.0
@@ -110,22 +106,6 @@ def _weighing(driver: Driver, session: Session, conditions: CockpitConditions) -
         session_id=session.id,
         entered_by="coach",
     )
-
-
-def _sweat_rate_l_per_h(driver: Driver, session: Session, conditions: CockpitConditions) -> float:
-    place = PLACE_BY_ID[ROUNDS[session.round_id - 1].place_id]
-    inputs = HeatInputs(
-        Range.exactly(conditions.air_temperature_c),
-        Range.exactly(conditions.radiant_temperature_c),
-        Range.exactly(conditions.humidity_pct),
-        Range.exactly(conditions.air_speed_m_s),
-        Range.exactly(METABOLIC_W_M2),
-        Range.exactly(SUIT_CLO),
-        Range.exactly(SUIT_PERMEABILITY),
-    )
-    pressure_hpa = site_pressure(place.track_elevation_m, place.latitude_deg).pressure_hpa
-    predicted = predicted_sweat(inputs, driver.mass_kg, driver.height_cm, pressure_hpa)
-    return float(predicted.sweat_rate_l_per_h.best) * SWEAT_RATIO[driver.id]
 
 
 def _on_scale(mass_kg: float) -> float:

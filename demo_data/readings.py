@@ -1,4 +1,4 @@
-"""Ten weeks of oximeter readings: what the model expects of a person drawn from the population, and noise.
+"""Ten weeks of oximeter readings: what such a person shows at such a place (see nature), and noise.
 
 The faults in them are meant: a cold finger, a typing error, readings with a moving hand, a driver who does
 not adapt, one who is ill.
@@ -13,13 +13,10 @@ from typing import Final
 
 import numpy as np
 
-from demo_data.world import NOW, NOW_ROUND, PLACE, PLACE_BY_ID, ROUNDS, SESSIONS, TODAY, at, generator
-from planner.monitoring.model import Notice, Reading, SickPeriod
-from planner.physiology.acclimatisation import ExposureHistory
-from planner.physiology.expectation import Expectation, expected_spo2
-from planner.physiology.person import Latents, PersonPosterior
-from planner.physiology.ventilation import Wakefulness
-from planner.season.exposure import exposure_history, track_days, where_is
+from demo_data.nature import RESIDENT_DAYS, SCATTER_PCT, spo2_pct
+from demo_data.world import NOW, NOW_ROUND, PLACE, PLACE_BY_ID, SESSIONS, TODAY, at, generator
+from planner.monitoring.model import Notice, Reading, SickPeriod, Wakefulness
+from planner.season.exposure import where_is
 from planner.season.model import Driver, Leg, PressureMeasurement, Stay
 
 FIRST_MORNING: Final = TODAY - timedelta(weeks=10)
@@ -31,10 +28,10 @@ FULL: Final = 100.0
 
 @dataclass(frozen=True)
 class Person:
-    """How one driver differs from the population, in its terms, and how the driver measures."""
+    """How one driver differs from others, and how the driver measures."""
 
-    breathing: float  # the breathing response, in the population's standard deviations
-    offset_pct: float  # admixture and oximeter together
+    breathing: float  # breathes more than others, in standard deviations
+    offset_pct: float  # of person and oximeter together
     resting_pulse_bpm: float
     device: str
     records_nights: bool
@@ -44,7 +41,7 @@ PERSONS: Final = {
     1: Person(+0.6, +0.3, 52.0, "oximeter A", records_nights=True),
     2: Person(-0.4, -0.3, 56.0, "oximeter B", records_nights=False),
     3: Person(+1.1, +0.2, 54.0, "oximeter A", records_nights=True),
-    4: Person(+0.1, +0.1, 58.0, "oximeter B", records_nights=True),
+    4: Person(-0.7, -0.2, 58.0, "oximeter B", records_nights=True),
     5: Person(-0.2, +0.4, 60.0, "oximeter A", records_nights=False),
     6: Person(+0.3, -0.5, 49.0, "oximeter C", records_nights=True),
     7: Person(-0.7, -0.1, 55.0, "oximeter B", records_nights=False),
@@ -60,8 +57,8 @@ MISTYPED: Final = (6, date(2026, 4, 25), 69.0)  # 96 was read, 69 typed
 STORY_SCATTER: Final = 0.1  # chance has less of a say where the season tells something
 # Points that a morning's reading lies away from what the person would show otherwise.
 SHIFT_PCT: Final = {
-    (DOES_NOT_ADAPT, TODAY - timedelta(days=1)): -4.4,
-    (DOES_NOT_ADAPT, TODAY): -4.8,
+    (DOES_NOT_ADAPT, TODAY - timedelta(days=1)): -3.7,
+    (DOES_NOT_ADAPT, TODAY): -3.9,
     (COLD_HAND_TODAY, TODAY): -6.0,
     (ILL_TODAY, TODAY - timedelta(days=1)): -1.0,
     (ILL_TODAY, TODAY): -1.5,
@@ -117,24 +114,15 @@ PRESSURES: Final = tuple(
 
 def readings(driver: Driver, stays: Sequence[Stay], legs: Sequence[Leg]) -> list[Reading]:
     """Return all readings of a driver up to now, oldest first."""
-    history = exposure_history(
-        PLACE_BY_ID[driver.home_place_id],
-        stays,
-        legs,
-        PLACE_BY_ID,
-        origin=NOW,
-        pressures=PRESSURES,
-        track_days=track_days(ROUNDS, SESSIONS, PLACE_BY_ID),
-    )
     taken: list[Reading] = []
     day = FIRST_MORNING
     while day <= TODAY:
         stay = _stay_on(driver, day, stays, legs)
         if stay is not None:
-            taken += _night(driver, day, stay, history)
-            taken += _morning(driver, day, stay, history)
+            taken += _night(driver, day, stay)
+            taken += _morning(driver, day, stay)
         day += timedelta(days=1)
-    taken += _after_sessions(driver, history)
+    taken += _after_sessions(driver, stays)
     return sorted((each for each in taken if each.taken_at <= NOW), key=lambda each: each.taken_at)
 
 
@@ -155,7 +143,7 @@ def _stay_on(driver: Driver, day: date, stays: Sequence[Stay], legs: Sequence[Le
     return None
 
 
-def _night(driver: Driver, day: date, stay: Stay, history: ExposureHistory) -> list[Reading]:
+def _night(driver: Driver, day: date, stay: Stay) -> list[Reading]:
     """Return the reading of a recorded night: every night up high, every fifth one elsewhere."""
     person, random = PERSONS[driver.id], generator(f"night {day}", driver.id)
     high = PLACE_BY_ID[stay.place_id].bed_elevation_m > HIGH_BEDS_M and stay.place_id != driver.home_place_id
@@ -164,14 +152,14 @@ def _night(driver: Driver, day: date, stay: Stay, history: ExposureHistory) -> l
     taken_at = waking(driver, day, stay) - timedelta(minutes=int(random.integers(170, 230)))
     if taken_at < stay.arrive_at + timedelta(hours=3):
         return []
-    spo2_pct = _drawn_spo2_pct(driver, day, taken_at, history, "asleep", random)
+    shown_pct = _drawn_spo2_pct(driver, day, taken_at, stay, "asleep", random)
     return [
         Reading(
             driver.id,
             stay.place_id,
             taken_at,
-            spo2_pct,
-            pulse_bpm=_drawn_pulse_bpm(driver, spo2_pct, random) - 5.0,
+            shown_pct,
+            pulse_bpm=_drawn_pulse_bpm(driver, shown_pct, random) - 5.0,
             wakefulness="asleep",
             device=person.device,
             entered_by=driver.name,
@@ -179,20 +167,20 @@ def _night(driver: Driver, day: date, stay: Stay, history: ExposureHistory) -> l
     ]
 
 
-def _morning(driver: Driver, day: date, stay: Stay, history: ExposureHistory) -> list[Reading]:
+def _morning(driver: Driver, day: date, stay: Stay) -> list[Reading]:
     """Return the morning's reading, a second one where the hand had moved; now and then none."""
     person, random = PERSONS[driver.id], generator(f"morning {day}", driver.id)
     missed, moved = random.random() < MISSED_SHARE, random.random() < MOVED_HAND_SHARE
     if (driver.id == NOT_YET_MEASURED and day == TODAY) or (missed and day < TODAY - timedelta(days=2)):
         return []
     taken_at = waking(driver, day, stay) + timedelta(minutes=int(random.integers(8, 33)))
-    spo2_pct = _drawn_spo2_pct(driver, day, taken_at, history, "awake", random)
+    shown_pct = _drawn_spo2_pct(driver, day, taken_at, stay, "awake", random)
     proper = Reading(
         driver.id,
         stay.place_id,
         taken_at,
-        spo2_pct,
-        pulse_bpm=_drawn_pulse_bpm(driver, spo2_pct, random),
+        shown_pct,
+        pulse_bpm=_drawn_pulse_bpm(driver, shown_pct, random),
         device=person.device,
         warm_hand=not (driver.id == COLD_HAND_TODAY and day == TODAY),
         entered_by=driver.name,
@@ -206,21 +194,22 @@ def _morning(driver: Driver, day: date, stay: Stay, history: ExposureHistory) ->
     return [proper]
 
 
-def _after_sessions(driver: Driver, history: ExposureHistory) -> list[Reading]:
+def _after_sessions(driver: Driver, stays: Sequence[Stay]) -> list[Reading]:
     """Return the reading that some take just after this weekend's second practice; it teaches nothing."""
     person, random = PERSONS[driver.id], generator("after practice", driver.id)
     if not person.records_nights:
         return []
     practice = next(each for each in SESSIONS if each.round_id == NOW_ROUND and each.name == "Practice 2")
     taken_at = practice.ends_at + timedelta(minutes=int(random.integers(6, 15)))
-    spo2_pct = _drawn_spo2_pct(driver, taken_at.date(), taken_at, history, "awake", random) - 1.0
+    stay = next(each for each in stays if each.arrive_at <= taken_at < each.depart_at)
+    shown_pct = _drawn_spo2_pct(driver, taken_at.date(), taken_at, stay, "awake", random) - 1.0
     return [
         Reading(
             driver.id,
-            ROUNDS[NOW_ROUND - 1].place_id,
+            stay.place_id,
             taken_at,
-            spo2_pct,
-            pulse_bpm=_drawn_pulse_bpm(driver, spo2_pct, random) + 45.0,
+            shown_pct,
+            pulse_bpm=_drawn_pulse_bpm(driver, shown_pct, random) + 45.0,
             circumstance="after a session",
             device=person.device,
             entered_by="coach",
@@ -232,34 +221,25 @@ def _drawn_spo2_pct(
     driver: Driver,
     day: date,
     taken_at: datetime,
-    history: ExposureHistory,
+    stay: Stay,
     wakefulness: Wakefulness,
     random: np.random.Generator,
 ) -> float:
-    """Return a whole per cent drawn around what the model expects of exactly this person."""
+    """Return a whole per cent drawn around what this person shows there after so many days."""
     person = PERSONS[driver.id]
-    latents = Latents(
-        breathing=np.array([person.breathing]),
-        weight=np.array([1.0]),
-        offset_mean_pct=np.array([person.offset_pct]),
-        offset_sd_pct=np.array([0.0]),
-    )
-    hours = (taken_at - NOW) / timedelta(hours=1)
-    expected: Expectation = expected_spo2(
-        history, hours, wakefulness=wakefulness, person=PersonPosterior(new_device=latents)
-    )
-    scatter_pct = float(np.hypot(expected.day_to_day_sd_pct, expected.oximeter_sd_pct))
-    if day == TODAY or (driver.id, day) in SHIFT_PCT:
-        scatter_pct *= STORY_SCATTER
+    at_home = stay.place_id == driver.home_place_id
+    days = RESIDENT_DAYS if at_home else (taken_at - stay.arrive_at) / timedelta(days=1)
+    own_pct = spo2_pct(PLACE_BY_ID[stay.place_id], days, person.breathing, asleep=wakefulness == "asleep")
+    told = day == TODAY or (driver.id, day) in SHIFT_PCT
+    noise_pct = random.normal() * SCATTER_PCT * (STORY_SCATTER if told else 1.0)
     shift_pct = SHIFT_PCT.get((driver.id, day), 0.0) if wakefulness == "awake" else 0.0
-    drawn = float(expected.mean_spo2_pct) + shift_pct + random.normal() * scatter_pct
-    return float(min(round(drawn), FULL))
+    return float(min(round(own_pct + person.offset_pct + shift_pct + noise_pct), FULL))
 
 
-def _drawn_pulse_bpm(driver: Driver, spo2_pct: float, random: np.random.Generator) -> float:
+def _drawn_pulse_bpm(driver: Driver, shown_pct: float, random: np.random.Generator) -> float:
     """Return a whole pulse: faster with less oxygen."""
     return float(
-        round(PERSONS[driver.id].resting_pulse_bpm + 0.9 * (97.0 - spo2_pct) + random.normal() * 2.5)
+        round(PERSONS[driver.id].resting_pulse_bpm + 0.9 * (97.0 - shown_pct) + random.normal() * 2.5)
     )
 
 
