@@ -15,11 +15,10 @@ from planner.services.season import (
     Calendar,
     RoundCost,
     Whereabouts,
-    read_calendar,
     round_costs,
     whereabouts,
 )
-from planner.store.store import Store
+from planner.ui.cached import calendar_of
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.tables import note, table
 from planner.units import from_house
@@ -34,16 +33,10 @@ from planner.wording import (
 )
 
 
-@st.cache_resource(show_spinner=False, max_entries=4)
-def calendar_of(store_uid: str, store_path: str, version: int, _store: Store) -> Calendar:
-    """The season of one state of one store."""
-    return read_calendar(_store)
-
-
 def main() -> None:
     """Draw the page."""
     ctx = start_page("Season")
-    calendar = calendar_of(ctx.store.uid, str(ctx.store.path), ctx.store.version(), ctx.store)
+    calendar = calendar_of(ctx)
     if not calendar.rounds:
         answer("No rounds yet. Add places and rounds on Team, or read them from a file on Readings.")
     else:

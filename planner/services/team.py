@@ -3,13 +3,18 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Final, TypeVar
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import Final, TypeAlias, TypeVar
 
 from planner.errors import InputError
 from planner.season.model import Commitment, Driver, Place, Round, Session
+from planner.services.importing import start_empty
+from planner.services.workspace import mark_begun_empty
 from planner.store.store import Store
 
-R = TypeVar("R", Driver, Place, Round, Session, Commitment)
+TeamRecord: TypeAlias = Driver | Place | Round | Session | Commitment
+R = TypeVar("R", bound=TeamRecord)
 
 # What the screen calls a field of a record.
 FIELD_NAMES: Final = {
@@ -53,3 +58,25 @@ def removed(store: Store, kind: type[R]) -> list[R]:
     """Return the records of a kind that were removed and can be put back."""
     kept = {record.id for record in store.all(kind)}
     return [record for record in store.all(kind, include_removed=True) if record.id not in kept]
+
+
+def begin_own_team(store: Store, *, by: str) -> int:
+    """Put the demo season aside, with all that was typed into it, and start the real clock.
+
+    Everything is removed in one change set, whose id is returned; undoing it brings the records back.
+    """
+    with store.transaction(by, "the demo season put aside") as change_set_id:
+        for kind in (Driver, Round, Place):
+            for record in store.all(kind):
+                store.remove(record, by=by)
+        start_empty(store)
+        mark_begun_empty(store)
+    return change_set_id
+
+
+def backup_bytes(store: Store) -> bytes:
+    """Return a consistent copy of the whole store, as a file's content."""
+    with TemporaryDirectory() as folder:
+        copy = Path(folder) / "planner-backup.db"
+        store.backup(copy)
+        return copy.read_bytes()

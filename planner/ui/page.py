@@ -111,12 +111,12 @@ def _head(title: str, context: Context) -> None:
         you = st.popover(context.who, type="tertiary", key="you", on_change="rerun")
     if you.open:
         with you, plain_errors():
-            _you(context)
+            you_form(context, "you_form")
 
 
-def _you(context: Context) -> None:
-    """Who types here, and in which units; drawn only while it is open."""
-    with st.form("you_form", border=False):
+def you_form(context: Context, key: str) -> None:
+    """Who types here, and in which units."""
+    with st.form(key, border=False):
         name = st.text_input("Your name", context.who, help="It is kept beside what you type.")
         chosen = {
             field.name: st.segmented_control(

@@ -1,0 +1,82 @@
+"""A list of records that can be added to, changed, removed and put back: what all kinds have in common."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import Generic
+
+import streamlit as st
+
+from planner.services.team import R, removed, save
+from planner.ui.errors import plain_errors
+from planner.ui.page import Context, note_for_next_run
+from planner.ui.tables import table
+
+ADD = 0  # stands for "a new one" among the ids
+
+
+@dataclass(frozen=True)
+class RecordList(Generic[R]):
+    """One kind of record on the screen.
+
+    `form` draws the widgets for a record (None = a new one) and returns what builds the record from what was
+    typed; it is called only when the form is kept, so an error leaves everything as it was typed.
+    """
+
+    kind: type[R]
+    noun: str  # "driver"
+    head: Sequence[str]
+    row: Callable[[R], Sequence[str]]
+    form: Callable[[R | None], Callable[[], R]]
+    right: Sequence[int] = ()
+    key: str = ""  # tells two lists of one kind apart, such as the sessions of two rounds
+
+
+def draw_records(ctx: Context, records: Sequence[R], shown: RecordList[R]) -> R | None:
+    """Draw the list with the form for the chosen one, and return that; None stands for a new one."""
+    if records:
+        table(shown.head, [shown.row(each) for each in records], right=shown.right, stack=True)
+    by_id = {each.id: each for each in records}
+    key = f"{shown.noun}{shown.key}"
+    chosen = st.selectbox(
+        f"Add or change a {shown.noun}",
+        [ADD, *by_id],
+        format_func=lambda id: by_id[id].name if id else f"Add a {shown.noun}",
+        key=f"{key}_chosen",
+    )
+    record = by_id.get(chosen)
+    # A form that was kept is drawn afresh under a new number, so that the next one starts empty.
+    times_kept = st.session_state.setdefault(f"{key}_times_kept", 0)
+    with st.form(f"{key}_{chosen}_{times_kept}", border=True):
+        build = shown.form(record)
+        with st.container(horizontal=True, gap="small"):
+            keep = st.form_submit_button("Keep", type="primary")
+            remove = st.form_submit_button("Remove") if record else False
+    with plain_errors():
+        if keep:
+            kept = save(ctx.store, build(), by=ctx.who)
+            _done(key, f"Kept: {kept.name}.")
+        if remove and record is not None:
+            ctx.store.remove(record, by=ctx.who, why="removed on Team")
+            _done(key, f"Removed: {record.name}. It can be put back below.")
+    _draw_removed(ctx, shown, key)
+    return record
+
+
+def _done(key: str, text: str) -> None:
+    st.session_state[f"{key}_times_kept"] += 1
+    note_for_next_run(text)
+    st.rerun()
+
+
+def _draw_removed(ctx: Context, shown: RecordList[R], key: str) -> None:
+    gone = removed(ctx.store, shown.kind)
+    if not gone:
+        return
+    with st.expander(f"Removed ({len(gone)}): can be put back"):
+        for record in gone:
+            if st.button(f"Put back {record.name}", key=f"{key}_put_back_{record.id}"):
+                with plain_errors():
+                    ctx.store.restore(shown.kind, record.id, by=ctx.who)
+                    _done(key, f"Put back: {record.name}.")
