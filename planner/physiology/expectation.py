@@ -13,13 +13,15 @@ from planner.constants import AIR_OXYGEN_FRACTION, HPA_PER_MMHG
 from planner.physiology.acclimatisation import ExposureHistory, ventilatory_state_at
 from planner.physiology.blood import po2_mmhg
 from planner.physiology.normal import _mixture_quantile
-from planner.physiology.person import NEGLIGIBLE_WEIGHT, Latents, PersonPosterior, population_latents
+from planner.physiology.person import Latents, PersonPosterior, population_latents
 from planner.physiology.population import POPULATION, Population
 from planner.physiology.ventilation import Wakefulness, _Chain, _chain, _is_asleep
 
 LOW_PROBABILITY: Final = 0.025
 HIGH_PROBABILITY: Final = 0.975
 HIGHEST_READING_PCT: Final = 100.0
+# A node below this weight cannot move a 2.5 % quantile by a hundredth of a point.
+NEGLIGIBLE_WEIGHT: Final = 1e-7
 # The published rows behind the fit end near 5000 m (75 mmHg); a few mmHg more for a low-pressure day.
 LOWEST_VALID_INSPIRED_PO2_MMHG: Final = 72.0
 HIGHEST_VALID_INSPIRED_PO2_MMHG: Final = 165.0

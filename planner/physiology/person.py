@@ -17,11 +17,9 @@ import numpy as np
 from planner.checks import FloatArray
 from planner.physiology.population import POPULATION, Population
 
-# Nodes of the breathing response in population standard deviations. Sums over evenly spaced nodes with normal
-# weights are exact to many digits (the trapezoid rule on a bell curve), so there is no sampling noise.
+# Nodes of the breathing strength in standard deviations between people. Sums over evenly spaced nodes with
+# normal weights are exact to many digits (the trapezoid rule on a bell curve): there is no sampling noise.
 PRIOR_NODES: Final = np.linspace(-3.6, 3.6, 25)
-# A node below this weight cannot move a 2.5 % quantile by a hundredth of a point.
-NEGLIGIBLE_WEIGHT: Final = 1e-7
 
 
 @dataclass(frozen=True)
@@ -40,16 +38,29 @@ class Latents:
 
 
 @dataclass(frozen=True)
+class Estimate:
+    """Mean and standard deviation of a latent value."""
+
+    mean: float
+    sd: float
+
+
+@dataclass(frozen=True)
 class PersonPosterior:
     """A person as learned from readings.
 
-    `by_device` holds a set of latents for every device that read the person, `new_device` that for a device
-    never used before; `usual_device` is the one with most readings. `own_share` [1] is the part of the
-    population's variance between people and devices at the reference place that the readings have removed.
+    `by_device` holds latents for every device that read the person, `new_device` those for a device never
+    used before; `usual_device` is the one with most readings. `breathing` is in standard deviations between
+    people (0 = the median), `admixture_pct` in points of saturation (the population's mean is
+    `venous_admixture_pct`), `device_bias_pct` in points. `own_share` [1] is the part of the population's
+    variance between people and devices, at the reference place of `learning`, that the readings have removed.
     """
 
     new_device: Latents
+    breathing: Estimate
+    admixture_pct: Estimate
     by_device: Mapping[str, Latents] = field(default_factory=dict)
+    device_bias_pct: Mapping[str, Estimate] = field(default_factory=dict)
     usual_device: str | None = None
     readings: int = 0
     readings_above_1500_m: int = 0
