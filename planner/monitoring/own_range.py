@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from datetime import UTC, datetime
-from typing import Any, Final
+from typing import Any, Final, Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,7 +18,7 @@ from planner.monitoring.outcome import quality_fault
 from planner.physiology.acclimatisation import ExposureHistory, ventilatory_state_at
 from planner.physiology.learning import learned
 from planner.physiology.person import PersonPosterior
-from planner.wording import number
+from planner.wording import number, per_cent
 
 # What a reading needs to be judged; the names of `Reading`'s fields and of the store's columns.
 COLUMNS: Final = (
@@ -33,6 +33,8 @@ COLUMNS: Final = (
     "emergency_signs",
     "left_out",
 )
+PLAIN_TYPES: Final[dict[str, type]] = {"driver_id": np.int64, "spo2_pct": np.float64, "warm_hand": np.bool_}
+SIDES: Final[tuple[Literal["left"], Literal["right"]]] = ("left", "right")
 MICROSECONDS_PER_HOUR: Final = 3.6e9
 
 
@@ -62,10 +64,9 @@ def own_ranges(
     *,
     origin: datetime,
 ) -> dict[int, PersonPosterior]:
-    """What the readings say of each driver that has a history.
+    """What the readings say of each driver that has a history; those of other drivers are passed over.
 
     Parameters: `readings` of any drivers in any order; `histories` by driver id, in hours since `origin`.
-    Raises: KeyError never: readings of drivers without a history are passed over.
     """
     return own_ranges_from_columns(columns_of(list(readings)), histories, sick_periods, origin=origin)
 
@@ -77,10 +78,8 @@ def columns_of(readings: Sequence[Reading]) -> dict[str, NDArray[Any]]:
         values = [getattr(reading, name) for reading in readings]
         if name == "taken_at":
             columns[name] = np.array([_in_utc(v) for v in values], dtype="datetime64[us]")
-        elif name in ("driver_id", "spo2_pct", "warm_hand"):
-            columns[name] = np.array(
-                values, dtype={"driver_id": np.int64, "warm_hand": bool}.get(name, float)
-            )
+        elif name in PLAIN_TYPES:
+            columns[name] = np.array(values, dtype=PLAIN_TYPES[name])
         else:
             column = np.empty(len(values), dtype=object)
             column[:] = values
@@ -106,9 +105,8 @@ def own_ranges_from_columns(
     of_driver = driver[order]
     ranges: dict[int, PersonPosterior] = {}
     for driver_id, history in histories.items():
-        ours = order[
-            np.searchsorted(of_driver, driver_id) : np.searchsorted(of_driver, driver_id, side="right")
-        ]
+        first, behind = (int(np.searchsorted(of_driver, driver_id, side=side)) for side in SIDES)
+        ours = order[first:behind]
         ours = ours[~_in_sickness(taken_at[ours], [p for p in periods if p.driver_id == driver_id])]
         at_h = hours[ours]
         ranges[driver_id] = learned(
@@ -133,8 +131,8 @@ def own_range_in_words(person: PersonPosterior, pronoun: str = "the driver's") -
     noun = "reading" if person.readings == 1 else "readings"
     high = person.readings_above_1500_m
     above = f"{number(high) if high else 'none'} of them above {number(1500)} m"
-    share = number(5.0 * round(20.0 * person.own_share))
-    return f"{number(person.readings)} {noun}, {above}: the range is about {share} % {pronoun} own."
+    share = per_cent(5.0 * round(20.0 * person.own_share))
+    return f"{number(person.readings)} {noun}, {above}: the range is about {share} {pronoun} own."
 
 
 def _teaches(columns: Mapping[str, NDArray[Any]]) -> NDArray[np.bool_]:
