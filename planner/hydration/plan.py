@@ -133,12 +133,23 @@ def plan_drinks(
     full = replace(
         setting, **{f.name: np.broadcast_to(getattr(setting, f.name), shape) for f in fields(setting)}
     )
-    prediction, raised = _never_below_sea_level(here, at_sea)
-    learned = _learned(prediction, evidence, shape)
-    rate = rate_to_expect(prediction, learned)
-    sweat = Range(*(np.minimum(np.broadcast_to(each, shape), HIGHEST_SWEAT_L_PER_H) for each in _ends(rate)))
-    beyond = np.broadcast_to(prediction.beyond_validity, shape)
-    return _plan(full, sweat, learned, np.broadcast_to(raised, shape), beyond)
+    raised = _best(at_sea) - _best(here)
+    learned = _learned(np.maximum(_best(here), _best(at_sea)), here, evidence, shape)
+    rates = [
+        Range(*(np.minimum(np.broadcast_to(end, shape), HIGHEST_SWEAT_L_PER_H) for end in _ends(rate)))
+        for rate in (rate_to_expect(here, learned), rate_to_expect(at_sea, learned))
+    ]
+    # Two plans, and what is drunk and eaten afterwards by the larger: with the larger sweat alone, a fuller
+    # bottle in the car could leave less for afterwards than at sea level.
+    plan = _plan(full, _larger(*rates), learned)
+    sea_plan = _plan(full, rates[1], learned)
+    return replace(
+        plan,
+        raised_to_sea_level_l_per_h=np.broadcast_to(np.maximum(raised, 0.0), shape) * learned.ratio,
+        beyond_validity=np.broadcast_to(here.beyond_validity, shape),
+        after_ml=_larger(plan.after_ml, sea_plan.after_ml),
+        sodium_mg=_larger(plan.sodium_mg, sea_plan.sodium_mg),
+    )
 
 
 def timeline(
@@ -170,38 +181,28 @@ def _share(amount: Range, part: float) -> Range:
     return Range(*(np.asarray(each) * part for each in (amount.low, amount.best, amount.high)))
 
 
-def _never_below_sea_level(
-    here: SweatPrediction, at_sea: SweatPrediction
-) -> tuple[SweatPrediction, FloatArray]:
-    """The prediction with the higher best rate, whole, and by how much the one at sea level is higher."""
-    raised = np.asarray(at_sea.sweat_rate_l_per_h.best) - np.asarray(here.sweat_rate_l_per_h.best)
-    lower_here = raised > 0.0
-
-    def higher(name: str) -> FloatArray:
-        chosen: FloatArray = np.where(lower_here, getattr(at_sea, name), getattr(here, name))
-        return chosen
-
-    sea, own = at_sea.sweat_rate_l_per_h, here.sweat_rate_l_per_h
-    rate = Range(
-        *(np.where(lower_here, getattr(sea, end), getattr(own, end)) for end in ("low", "best", "high"))
-    )
-    names = [f.name for f in fields(SweatPrediction) if f.name != "sweat_rate_l_per_h"]
-    together = SweatPrediction(sweat_rate_l_per_h=rate, **{name: higher(name) for name in names})
-    return together, np.maximum(raised, 0.0)
+def _best(prediction: SweatPrediction) -> FloatArray:
+    return np.asarray(prediction.sweat_rate_l_per_h.best, dtype=np.float64)
 
 
-def _learned(prediction: SweatPrediction, evidence: Evidence | None, shape: tuple[int, ...]) -> Learned:
-    prior = np.broadcast_to(prior_log_sd(prediction), shape)
+def _larger(one: Range, other: Range) -> Range:
+    return Range(*(np.maximum(a, b) for a, b in zip(_ends(one), _ends(other), strict=True)))
+
+
+def _learned(
+    expected_l_per_h: FloatArray,
+    prediction: SweatPrediction,
+    evidence: Evidence | None,
+    shape: tuple[int, ...],
+) -> Learned:
     if evidence is None:
         none = np.full((*shape, 0), np.nan)
         evidence = Evidence(none, none, none)
-    expected = np.broadcast_to(np.asarray(prediction.sweat_rate_l_per_h.best, dtype=np.float64), shape)
-    return learn_ratio(evidence, expected, prior)
+    prior = np.broadcast_to(prior_log_sd(prediction), shape)
+    return learn_ratio(evidence, np.broadcast_to(expected_l_per_h, shape), prior)
 
 
-def _plan(
-    setting: Setting, sweat: Range, learned: Learned, raised: FloatArray, beyond: FloatArray
-) -> DrinksPlan:
+def _plan(setting: Setting, sweat: Range, learned: Learned) -> DrinksPlan:
     mass = np.asarray(setting.mass_kg, dtype=np.float64)
     hours = np.asarray(setting.session_hours, dtype=np.float64)
     four = four_hours_before_ml(mass)
@@ -239,8 +240,8 @@ def _plan(
         own_share=learned.own_share,
         weighings=learned.weighings,
         like_conditions=learned.like_conditions,
-        raised_to_sea_level_l_per_h=raised,
-        beyond_validity=beyond,
+        raised_to_sea_level_l_per_h=np.nan,
+        beyond_validity=np.nan,
     )
 
 

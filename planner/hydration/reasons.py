@@ -134,8 +134,8 @@ def _after_reason(setting: Setting) -> str:
     gap = _number(setting.hours_to_next)
     if gap <= NEXT_IS_NEAR_H:
         return (
-            f"After: 1.25–1.5 L for each kg lost, with salt, since the next session is {_duration(gap)} away; "
-            "the weigh-out counts, and nobody starts it heavier than this one."
+            f"After: 1.25–1.5 L for each kg lost, with salt, since the next session is {_duration(gap)} "
+            "away; the weigh-out counts, and nobody starts it heavier than this one."
         )
     return "After: what the weigh-out shows as lost, with meals, in no hurry (judgement)."
 

@@ -9,7 +9,7 @@ from typing import Final
 
 import numpy as np
 
-from planner.checks import FloatArray, FloatLike, checked, like
+from planner.checks import QUANTITIES, FloatArray, FloatLike, checked, like
 from planner.physiology.ranges import Range, checked_range
 
 # ACSM 2007, Med Sci Sports Exerc 39:377, and NATA 2017, J Athl Train 52:877 (published).
@@ -286,13 +286,16 @@ def sodium_range_mmol_l(measured_mmol_l: FloatLike) -> Range:
         35.9
     """
     measured = checked("sweat_sodium_mmol_l", measured_mmol_l)
+    known = QUANTITIES["sweat_sodium_mmol_l"]
     middle = WHOLE_BODY_SLOPE * FOREARM_SODIUM_MMOL_L + WHOLE_BODY_INTERCEPT_MMOL_L
     half = SPREAD_SD * WHOLE_BODY_SLOPE * FOREARM_SODIUM_SD_MMOL_L
     unknown = np.isnan(measured)
+    own_low = np.maximum(measured * (1.0 - OWN_SODIUM_SPREAD), known.low)
+    own_high = np.minimum(measured * (1.0 + OWN_SODIUM_SPREAD), known.high)
     return Range(
-        like(np.where(unknown, middle - half, measured * (1.0 - OWN_SODIUM_SPREAD)), measured_mmol_l),
+        like(np.where(unknown, middle - half, own_low), measured_mmol_l),
         like(np.where(unknown, middle, measured), measured_mmol_l),
-        like(np.where(unknown, middle + half, measured * (1.0 + OWN_SODIUM_SPREAD)), measured_mmol_l),
+        like(np.where(unknown, middle + half, own_high), measured_mmol_l),
     )
 
 

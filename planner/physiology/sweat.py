@@ -21,7 +21,7 @@ from planner.physiology.ranges import Range, checked_range
 GONZALEZ_INTERCEPT: Final = 147.0
 GONZALEZ_REQUIRED: Final = 1.527
 GONZALEZ_MAXIMAL: Final = -0.87
-GONZALEZ_SEE_G_M2_H: Final = 100.0  # published as "less than 100"
+GONZALEZ_SEE_G_M2_H: Final = 95.0  # published as below 100; the figure itself is a judgement
 GONZALEZ_COOLEST_C: Final = 15.0
 GONZALEZ_HOTTEST_C: Final = 46.0
 ISO_THICKEST_CLO: Final = 1.0
