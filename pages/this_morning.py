@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Literal
+from typing import Literal, TypeAlias
 
 import streamlit as st
 
@@ -14,7 +14,12 @@ from planner.ui.errors import plain_errors
 from planner.ui.morning_rows import row_html
 from planner.ui.navigation import go_to
 from planner.ui.page import Context, answer, end_page, line, note_for_next_run, start_page
+from planner.ui.text import literal
 from planner.wording import clock, day, elevation, pressure, zone_name
+
+Kind: TypeAlias = Literal["told the physician", "note"]
+
+ASKING = "this morning asks about"
 
 
 def place_line(screen: ThisMorning, ctx: Context) -> str:
@@ -45,22 +50,34 @@ def draw_row(row: DriverRow, screen: ThisMorning, low_pct: float, ctx: Context) 
             if st.button(again, type="tertiary", key=f"again_{row.driver_id}"):
                 go_to("readings", row.driver_id)
             if st.button("Note", type="tertiary", key=f"note_{row.driver_id}"):
-                ask(ctx, row, "note")
+                ask_about(row, "note")
             if st.button("Physician told", type="tertiary", key=f"told_{row.driver_id}"):
-                ask(ctx, row, "told the physician")
+                ask_about(row, "told the physician")
+        driver_id, kind = st.session_state.get(ASKING, (None, "note"))
+        if driver_id == row.driver_id:
+            ask(ctx, row, kind)
 
 
-@st.dialog("Keep for today")
-def ask(ctx: Context, row: DriverRow, kind: Literal["told the physician", "note"]) -> None:
+def ask_about(row: DriverRow, kind: Kind) -> None:
+    """Open the question under this row, and close it under any other."""
+    st.session_state[ASKING] = (row.driver_id, kind)
+    st.rerun()
+
+
+def ask(ctx: Context, row: DriverRow, kind: Kind) -> None:
     """Ask for the words of a note, or for confirmation that the physician was told."""
-    with plain_errors(), st.form("notice", border=False):
-        label = (
-            f"Note on {row.driver}" if kind == "note" else f"{row.driver}: told the physician (words if any)"
-        )
-        text = st.text_area(label, max_chars=500)
-        if st.form_submit_button("Keep", type="primary"):
+    with plain_errors(), st.form(f"notice_{row.driver_id}", border=False):
+        name = literal(row.driver)
+        label = f"Note on {name}" if kind == "note" else f"The physician was told of {name}"
+        text = st.text_input(label, placeholder="" if kind == "note" else "in words, if any")
+        with st.container(horizontal=True):
+            keep = st.form_submit_button("Keep", type="primary")
+            leave = st.form_submit_button("Leave it")
+        if keep:
             keep_notice(ctx.store, row.driver_id, kind, text, by=ctx.who, at=ctx.now)
             note_for_next_run(f"Kept for {row.driver}.")
+        if keep or leave:
+            st.session_state.pop(ASKING)
             st.rerun()
 
 

@@ -19,7 +19,7 @@ from planner.store.store import Store
 from planner.ui.cautions import emergency_signs_button, footer
 from planner.ui.errors import plain_errors
 from planner.ui.style import style_sheet
-from planner.ui.text import escaped
+from planner.ui.text import escaped, literal
 from planner.units import TO_HOUSE
 from planner.wording import UnitChoice, day, unit_name
 
@@ -108,7 +108,7 @@ def _head(title: str, context: Context) -> None:
     ):
         st.html(f'<div class="p-over">{escaped(title)}</div>')
         emergency_signs_button()
-        you = st.popover(context.who, type="tertiary", key="you", on_change="rerun")
+        you = st.popover(literal(context.who), type="tertiary", key="you", on_change="rerun")
     if you.open:
         with you, plain_errors():
             you_form(context, "you_form")

@@ -22,7 +22,7 @@ from planner.services.readings import (
 from planner.services.typed import local_instant
 from planner.store.store import Store
 from planner.ui.page import Context, note_for_next_run
-from planner.ui.text import escaped
+from planner.ui.text import escaped, literal
 from planner.wording import day
 
 DAYS_SHOWN: Final = 21
@@ -34,7 +34,7 @@ def draw_corrections(ctx: Context) -> None:
     chosen = st.pills(
         "Driver",
         list(drivers),
-        format_func=lambda each: drivers[each].name,
+        format_func=lambda each: literal(drivers[each].name),
         default=next(iter(drivers)),
         required=True,
         key="correct_driver",

@@ -19,7 +19,7 @@ from planner.ui.errors import show_error
 from planner.ui.morning_rows import outcome_html
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, note_for_next_run
-from planner.ui.text import escaped
+from planner.ui.text import escaped, literal
 from planner.wording import unit_name
 
 AT_REST: Final = "At rest"
@@ -111,7 +111,7 @@ def _quick(
         "Driver",
         list(names),
         default=preset if preset in names else None,
-        format_func=lambda each: names[each],
+        format_func=lambda each: literal(names[each]),
         key=f"entry_driver_{entry}",
     )
     left, right = st.columns(2, wrap=False)
