@@ -70,7 +70,7 @@ def show_place(ctx: Context, place: Place) -> None:
         show_air(ctx, air)
     with right:
         show_days(ctx, air)
-    show_measuring(ctx, place, in_force)
+    show_measuring(ctx, place, in_force, len(history))
     show_history(ctx, place, history)
 
 
@@ -149,8 +149,13 @@ def show_days(ctx: Context, air: venues.VenueAir) -> None:
         line("This elevation lies beyond the data that the model was fitted to: an extrapolation.")
 
 
-def show_measuring(ctx: Context, place: Place, in_force: PressureMeasurement | None) -> None:
-    """Draw the field for a measured pressure: it shows at once what it changes and is kept on a button."""
+def show_measuring(
+    ctx: Context, place: Place, in_force: PressureMeasurement | None, times_kept: int
+) -> None:
+    """Draw the field for a measured pressure: it shows at once what it changes and is kept on a button.
+
+    Under a new number of kept pressures the field is a new one, and empty.
+    """
     st.subheader("Measured pressure", anchor=False)
     note(QFF_WARNING)
     with st.container(horizontal=True, vertical_alignment="bottom", gap="small"):
@@ -166,7 +171,7 @@ def show_measuring(ctx: Context, place: Place, in_force: PressureMeasurement | N
             value=None,
             step=0.1 if ctx.units.pressure == "kPa" else 1.0,
             format="%.2f" if ctx.units.pressure == "kPa" else "%.1f",
-            key=f"pressure_in_{ctx.units.pressure}_{place.id}",
+            key=f"pressure_in_{ctx.units.pressure}_{place.id}_{times_kept}",
             placeholder="not measured",
             width=220,
         )
