@@ -93,6 +93,8 @@ def judge_morning(
 
 
 def _outcome(change: float | None, likelihood: str, mark: MorningMark, doubted: bool) -> tuple[Outcome, str]:
+    if doubted and likelihood == "likely":
+        return "refer", "Weigh again, and tell the team physician today: urine and thirst point the same way."
     if doubted:
         return "repeat", "Weigh again: an entry so far from the baseline is doubted first."
     serious = (mark.urine_specific_gravity or 0.0) > SERIOUS_SPECIFIC_GRAVITY
