@@ -13,6 +13,7 @@ from zoneinfo import ZoneInfo
 from demo_data.nature import sweat_l_per_h
 from demo_data.readings import ILL_TODAY
 from demo_data.world import NOW, NOW_ROUND, PLACE_BY_ID, ROUNDS, SESSIONS, TODAY, generator
+from planner.hydration.cockpit import FULL_SUIT
 from planner.hydration.model import CockpitConditions, MorningMark, Weighing
 from planner.monitoring.model import Reading
 from planner.season.model import Driver, Session
@@ -25,7 +26,6 @@ SWEAT_RATIO: Final = {1: 0.85, 2: 1.05, 3: 0.95, 4: 1.10, 5: 0.80, 6: 1.35, 7: 1
 DRUNK_SHARE: Final = {1: 0.70, 2: 0.65, 3: 0.75, 4: 0.55, 5: 0.80, 6: 0.12, 7: 1.40, 8: 0.70}
 UNDER_DRINKS: Final = 6
 
-ENSEMBLE: Final = "racing overalls, whole ensemble"
 BREATH_KG_PER_H: Final = 0.06
 WEIGHED_AROUND: Final = timedelta(minutes=6)  # before the start and after the end of a session
 SCALE_STEP_KG: Final = 0.05
@@ -98,7 +98,7 @@ def _weighing(driver: Driver, session: Session, conditions: CockpitConditions) -
         mass_after_kg=_on_scale(after_kg + SCALE_SD_KG * random.normal()),
         drink_ml=drink_ml,
         urine_ml=urine_ml,
-        ensemble=ENSEMBLE,
+        ensemble=FULL_SUIT.name,
         air_temperature_c=conditions.air_temperature_c,
         radiant_temperature_c=conditions.radiant_temperature_c,
         humidity_pct=conditions.humidity_pct,

@@ -31,6 +31,7 @@ from planner.season.travel import nearest_airport
 from planner.services import importing
 from planner.services.importing import demo_folder, load_demo, preview_file, start_empty
 from planner.services.morning import morning
+from planner.services.team import begin_own_team
 from planner.services.workspace import now
 from planner.store.store import Store
 
@@ -138,6 +139,15 @@ def test_a_damaged_file_leaves_the_store_empty(
         load_demo(store)
     assert store.all(Driver) == []
     assert store.change_sets() == []
+
+
+def test_it_can_be_opened_again_after_it_was_put_aside(store: Store, demo: Store) -> None:
+    load_demo(store)
+    begin_own_team(store, by="coach")
+    load_demo(store)
+    assert len(store.readings()) == len(demo.readings())
+    assert store.check() == []
+    assert [row.outcome for row in morning(store)] == [row.outcome for row in morning(demo)]
 
 
 def test_an_empty_start_has_the_real_clock(store: Store) -> None:
@@ -354,5 +364,6 @@ def test_five_weeks_of_morning_marks(demo: Store) -> None:
     assert len(marks) >= 200
 
 
-def test_readings_and_marks_are_whole_records(demo: Store) -> None:
-    assert all(reading.entered_by for reading in demo.all(Reading))
+def test_it_is_said_who_typed_what(demo: Store) -> None:
+    typed = [*demo.all(Reading), *demo.all(Weighing), *demo.all(MorningMark)]
+    assert {record.entered_by for record in typed} == {"coach", *(d.name for d in demo.all(Driver))}

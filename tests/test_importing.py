@@ -104,6 +104,14 @@ def test_a_corrected_or_removed_reading_does_not_come_back(team: Store) -> None:
     assert [reading.spo2_pct for reading in team.readings()] == [94.0]
 
 
+def test_a_removed_place_may_come_in_again(store: Store) -> None:
+    data = b"name,zone,elevation_m,latitude,longitude\nA,Asia/Tokyo,5,35,136\n"
+    (place,) = import_file(store, data, "places.csv", by="coach", now=NOW).records
+    store.remove(place, by="coach")
+    assert import_file(store, data, "places.csv", by="coach", now=NOW).taken == 1
+    assert [each.name for each in store.all(Place)] == ["A"]
+
+
 def test_a_repetition_within_the_minute_is_a_reading_of_its_own(team: Store) -> None:
     data = b"driver,place,taken_at,spo2_pct\n" + b"".join(
         b"Ada,Plateau,2026-06-05 07:12,%d\n" % value for value in (88, 93, 88)

@@ -26,6 +26,7 @@ class FileKind(Generic[R]):
     problems: Callable[[R], list[InputError]]  # what the domain says against a record
     key_fields: tuple[str, ...]  # two records that agree in these fields are the same thing
     compared: tuple[str, ...] = ()  # columns in which two records of the same key must agree
+    remembered: bool = True  # one that was corrected or removed since is not brought back by an import
 
 
 @dataclass(frozen=True)

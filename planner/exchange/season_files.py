@@ -84,6 +84,7 @@ PLACES: Final = FileKind(
     problems=problems,
     key_fields=("name",),
     compared=("zone", "track_elevation_m", "bed_elevation_m", "latitude_deg", "longitude_deg"),
+    remembered=False,
 )
 
 
@@ -143,6 +144,7 @@ DRIVERS: Final = FileKind(
     problems=problems,
     key_fields=("name",),
     compared=("sex", "home_place", "mass_kg", "height_cm"),
+    remembered=False,
 )
 
 
@@ -171,6 +173,7 @@ ROUNDS: Final = FileKind(
     problems=problems,
     key_fields=("name",),
     compared=("number", "place"),
+    remembered=False,
 )
 
 
@@ -212,6 +215,7 @@ SESSIONS: Final = FileKind(
     problems=problems,
     key_fields=("round_id", "name"),
     compared=("kind", "starts_at", "ends_at"),
+    remembered=False,
 )
 
 

@@ -144,7 +144,9 @@ def _sorted_out(
     store: Store, kind: FileKind[Any], parsed: Parsed[Any], context: FileContext, file: str, by: str
 ) -> ImportReport:
     """Part the records that are new from those already there and those that contradict what is there."""
-    held = {_comparable(values) for values in store.held_before(kind.record, *kind.key_fields)}
+    held = set()
+    if kind.remembered:
+        held = {_comparable(values) for values in store.held_before(kind.record, *kind.key_fields)}
     known = {_key(kind, record): record for record in store.all(kind.record)}
     new: list[Any] = []
     already_there = 0
