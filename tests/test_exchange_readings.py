@@ -10,7 +10,7 @@ from planner.errors import RefusedLineError
 from planner.exchange.kinds import Parsed
 from planner.exchange.readings_file import read_readings
 from planner.monitoring.model import Reading
-from planner.season.model import Driver, Place
+from planner.season.model import Driver, Place, Stay
 
 NOW = datetime(2026, 6, 6, 13, 40, tzinfo=UTC)
 DRIVERS = (
@@ -77,7 +77,7 @@ def test_names_are_found_whatever_their_case_and_accents(name: str) -> None:
         ("Nobody;Plateau;2026-06-05 07:12;93", "driver", "Nobody", r"a driver known here \(Ada, Zoë"),
         ("Ada;Nowhere;2026-06-05 07:12;93", "place", "Nowhere", r"a place known here \(Harbour, Pl"),
         (";Plateau;2026-06-05 07:12;93", "driver", "", "the name of a driver"),
-        ("Ada;;2026-06-05 07:12;93", "place", "", "the name of a place"),
+        ("Ada;;2026-06-05 07:12;93", "place", "", "the name of a place: the itinerary has none"),
         ("Ada;Plateau;;93", "taken_at", "", "a date and time"),
         ("Ada;Plateau;yesterday;93", "taken_at", "yesterday", "a date and time"),
         ("Ada;Plateau;05.06.2062 07:12;93", "taken_at", "05.06.2062 07:12", "at most a day"),
@@ -134,6 +134,40 @@ def test_reports_every_fault_of_a_line_and_takes_the_others() -> None:
         (4, "pulse_bpm"),
     ]
     assert result.lines == (3,)
+
+
+STAYS = (
+    Stay(11, 22, datetime(2026, 6, 1, tzinfo=UTC), datetime(2026, 6, 3, 12, 0, tzinfo=UTC)),
+    Stay(11, 21, datetime(2026, 6, 4, 6, 0, tzinfo=UTC), datetime(2026, 6, 10, tzinfo=UTC)),
+    Stay(12, 22, datetime(2026, 6, 1, tzinfo=UTC), datetime(2026, 6, 10, tzinfo=UTC)),
+)
+
+
+def test_without_a_place_the_itinerary_tells_it() -> None:
+    data = (
+        b"driver,taken_at,spo2_pct\n"
+        b"Ada,2026-06-02 07:12,97\nAda,2026-06-05 07:12,93\n"
+        b"Ada,2026-06-03 20:00,95\nNobody,2026-06-03 20:00,95\n"
+    )
+    result = read_readings(data, "r.csv", drivers=DRIVERS, places=PLACES, now=NOW, stays=STAYS)
+    assert [(reading.place_id, reading.taken_at) for reading in result.records] == [
+        (22, datetime(2026, 6, 2, 5, 12, tzinfo=UTC)),
+        (21, datetime(2026, 6, 5, 13, 12, tzinfo=UTC)),
+    ]
+    assert [(fault.line, fault.field) for fault in result.refused] == [(4, "place"), (5, "driver")]
+    assert "the name of a place: the itinerary has none for that time" in str(result.refused[0])
+
+
+def test_a_wall_clock_time_that_fits_two_stays_needs_its_place() -> None:
+    # 19:30 on 3 June is shown in Rome at 17:30 UTC and in Mexico City (-06:00) at 01:30 UTC of 4 June.
+    stays = (
+        Stay(11, 22, datetime(2026, 6, 1, tzinfo=UTC), datetime(2026, 6, 3, 18, 0, tzinfo=UTC)),
+        Stay(11, 21, datetime(2026, 6, 4, 1, 0, tzinfo=UTC), datetime(2026, 6, 10, tzinfo=UTC)),
+    )
+    data = b"driver,taken_at,spo2_pct\nAda,2026-06-03 19:30,97\n"
+    result = read_readings(data, "r.csv", drivers=DRIVERS, places=PLACES, now=NOW, stays=stays)
+    with pytest.raises(RefusedLineError, match="the itinerary has 2 for that time"):
+        raise result.refused[0]
 
 
 def test_a_reading_may_lie_a_day_ahead_but_no_more() -> None:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from datetime import datetime
 from functools import cached_property
 
-from planner.season.model import Driver, Place, Round, Session
+from planner.season.model import Driver, Place, Round, Session, Stay
 
 
 def folded(name: str) -> str:
@@ -25,6 +25,7 @@ class FileContext:
     places: tuple[Place, ...] = ()
     rounds: tuple[Round, ...] = ()
     sessions: tuple[Session, ...] = ()
+    stays: tuple[Stay, ...] = ()  # tell where a driver was when the file does not
 
     @cached_property
     def driver_called(self) -> Mapping[str, Driver]:
@@ -60,6 +61,14 @@ class FileContext:
     def session(self) -> Mapping[int, Session]:
         """Sessions by id."""
         return {session.id: session for session in self.sessions}
+
+    @cached_property
+    def stays_by_driver(self) -> Mapping[int, list[Stay]]:
+        """The stays of each driver by the driver's id."""
+        stays: dict[int, list[Stay]] = {}
+        for stay in self.stays:
+            stays.setdefault(stay.driver_id, []).append(stay)
+        return stays
 
     def sessions_of(self, round_id: int) -> Mapping[str, Session]:
         """Return the sessions of a round by folded name."""

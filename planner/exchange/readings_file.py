@@ -6,25 +6,47 @@ from collections.abc import Iterable
 from datetime import datetime
 from typing import Final
 
+from planner.errors import InputError
 from planner.exchange.context import FileContext
 from planner.exchange.kinds import FileKind, Parsed, read_records
 from planner.exchange.lines import Line
-from planner.exchange.season_files import DRIVER, PLACE, driver_id_in, local, place_in
+from planner.exchange.season_files import DRIVER, driver_id_in, local, place_in
 from planner.exchange.tables import Cell, Column
 from planner.exchange.times import WANTED as A_TIME
+from planner.exchange.times import read_instant
 from planner.monitoring.model import Reading
 from planner.monitoring.validation import CIRCUMSTANCES, WAKEFULNESSES, problems
-from planner.season.model import Driver, Place
+from planner.season.model import Driver, Place, Stay
 
 _SIGN_SEPARATOR: Final = "|"
 _SCORE: Final = "0 (none) to 3 (severe), Lake Louise 2018"
 
 
+def _place_in(line: Line, context: FileContext, driver_id: int) -> tuple[int, str | None]:
+    """Return the id and zone of the place named, or else of the one where the itinerary has the driver."""
+    if line.given("place") or not driver_id or not line.given("taken_at"):
+        return place_in(line, context)
+    fitting: dict[int, str] = {}
+    for stay in context.stays_by_driver.get(driver_id, ()):
+        zone = context.place[stay.place_id].zone
+        try:
+            taken_at = read_instant(line.text("taken_at"), zone)
+        except InputError:  # said when the time itself is taken
+            continue
+        if stay.arrive_at <= taken_at < stay.depart_at:
+            fitting[stay.place_id] = zone
+    if len(fitting) == 1:
+        return fitting.popitem()
+    line.refuse("place", f"the name of a place: the itinerary has {len(fitting) or 'none'} for that time")
+    return 0, None
+
+
 def _take(line: Line, context: FileContext) -> Reading:
-    place_id, zone = place_in(line, context)
+    driver_id = driver_id_in(line, context)
+    place_id, zone = _place_in(line, context, driver_id)
     signs = (sign.strip() for sign in line.text("emergency_signs").split(_SIGN_SEPARATOR))
     return Reading(
-        driver_id=driver_id_in(line, context),
+        driver_id=driver_id,
         place_id=place_id,
         taken_at=line.measured_at("taken_at", zone),
         spo2_pct=line.percentage("spo2_pct"),
@@ -71,7 +93,7 @@ READINGS: Final = FileKind(
     record=Reading,
     columns=(
         DRIVER,
-        PLACE,
+        Column("place", "the name of a place; empty = where the itinerary has the driver"),
         Column("taken_at", A_TIME, required=True, aliases=("time",)),
         Column("spo2_pct", "a percentage from 40 to 100", required=True, aliases=("spo2",)),
         Column("pulse_bpm", "beats a minute", aliases=("pulse",)),
@@ -97,11 +119,19 @@ READINGS: Final = FileKind(
 
 
 def read_readings(
-    data: bytes, file: str, *, drivers: Iterable[Driver], places: Iterable[Place], now: datetime
+    data: bytes,
+    file: str,
+    *,
+    drivers: Iterable[Driver],
+    places: Iterable[Place],
+    now: datetime,
+    stays: Iterable[Stay] = (),
 ) -> Parsed[Reading]:
     """Read a file of readings; names are those of `drivers` and `places`, times at most a day after `now`.
 
+    Where the file names no place, `stays` tell it.
+
     Raises: RefusedLineError when the file as a whole cannot be used (see tables.read_table).
     """
-    context = FileContext(now=now, drivers=tuple(drivers), places=tuple(places))
+    context = FileContext(now=now, drivers=tuple(drivers), places=tuple(places), stays=tuple(stays))
     return read_records(READINGS, data, file, context)

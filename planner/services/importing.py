@@ -15,7 +15,7 @@ from planner.exchange.readings_file import READINGS
 from planner.exchange.registry import KINDS, kind_called, recognised
 from planner.exchange.tables import Column, cell_text, read_table
 from planner.exchange.times import read_instant
-from planner.season.model import Driver, Place, Round, Session
+from planner.season.model import Driver, Place, Round, Session, Stay
 from planner.services.workspace import FROZEN_CLOCK
 from planner.store.store import Store
 
@@ -130,6 +130,7 @@ def _context(store: Store, now: datetime) -> FileContext:
         places=tuple(store.all(Place)),
         rounds=tuple(store.all(Round)),
         sessions=tuple(store.all(Session)),
+        stays=tuple(store.all(Stay)),
     )
 
 
