@@ -219,6 +219,25 @@ def test_check_finds_what_this_program_would_never_write(store: Store) -> None:
     assert len(found) == 6
 
 
+def test_check_survives_values_that_cannot_even_be_read(store: Store) -> None:
+    keep_every_kind(store)
+    raw(
+        store.path,
+        "UPDATE reading SET emergency_signs = 'cough'",
+        "UPDATE stay SET arrive_at = 9000000000000000000",
+        "UPDATE driver SET iron_checked_on = 'spring'",
+        "UPDATE place SET track_elevation_m = 'high' WHERE id = 1",
+    )
+    found = store.check()
+    assert [line.split(":")[0] for line in found] == [
+        "place 1",
+        "a driver cannot be read",
+        "a stay cannot be read",
+        "a reading cannot be read",
+    ]
+    assert all("\n" not in line for line in found)
+
+
 def test_the_database_itself_guards_references(store: Store) -> None:
     with store._engine.connect() as connection, pytest.raises(Exception, match="FOREIGN KEY"):
         connection.exec_driver_sql("INSERT INTO round (number, name, place_id) VALUES (1, 'x', 5)")

@@ -29,8 +29,8 @@ CONNECTIONS_MORE = 24
 
 
 def prepare_path(path: Path) -> None:
-    """Make the folder and the file, and make sure that nothing else lies at the path: SQLite itself would take a short
-    text for an empty database and write over it.
+    """Make the folder and the file, and make sure that nothing else lies at the path: SQLite itself would
+    take a short text for an empty database and write over it.
 
     Raises: StoreError.
     """

@@ -8,12 +8,12 @@ import tempfile
 from contextlib import closing
 from pathlib import Path
 
-from sqlalchemy import Connection, Engine, Table, func, select
+from sqlalchemy import Connection, Engine, func, select
 
 from planner.errors import StoreError
 from planner.store import schema
 from planner.store.database import APPLICATION_ID, plain_words
-from planner.store.records import KINDS, Record, columns, problems, record_from
+from planner.store.records import KINDS, Kind, Record, columns, problems, record_from
 from planner.store.writes import dangling
 
 # Where SQLite's file format keeps the application id (https://www.sqlite.org/fileformat.html, 1.3).
@@ -85,28 +85,37 @@ def _to_disk(path: Path) -> None:
 
 def check(connection: Connection) -> list[str]:
     """What is wrong with the database, in words; empty when it is sound."""
-    found = [str(row[0]) for row in connection.exec_driver_sql("PRAGMA integrity_check") if row[0] != "ok"]
-    if found:
-        return [f"integrity: {line}" for line in found]
-    found += [
+    integrity = connection.exec_driver_sql("PRAGMA integrity_check").scalars().all()
+    if integrity != ["ok"]:
+        return [f"integrity: {' '.join(line.split())}" for line in integrity]
+    found = [
         f"{row[0]} {row[1]} refers to a {row[2]} that is not there"
         for row in connection.exec_driver_sql("PRAGMA foreign_key_check")
     ]
     found += dangling(connection)
     for kind in KINDS.values():
-        table = kind.table
-        for row in connection.execute(select(*columns(kind)).where(table.c.removed_in.is_(None))):
-            record: Record = record_from(kind.record, row)
-            found += [f"{table.name} {row[-1]}: {problem}" for problem in problems(record)]
-        found += _unlogged(connection, kind.name, table)
+        try:
+            found += _invalid(connection, kind)
+        except (ValueError, TypeError, OverflowError) as error:
+            found.append(f"a {kind.words} cannot be read: {' '.join(str(error).split())}")
+        found += _unlogged(connection, kind)
     return found
 
 
-def _unlogged(connection: Connection, name: str, table: Table) -> list[str]:
+def _invalid(connection: Connection, kind: Kind) -> list[str]:
+    """What the door of the store would refuse today in the records that are live."""
+    found = []
+    for row in connection.execute(select(*columns(kind)).where(kind.table.c.removed_in.is_(None))):
+        record: Record = record_from(kind.record, row)
+        found += [f"{kind.words} {row[-1]}: {problem}" for problem in problems(record)]
+    return found
+
+
+def _unlogged(connection: Connection, kind: Kind) -> list[str]:
     """Records that no change set accounts for, which this program never writes."""
     log = schema.change
-    logged = select(log.c.record_id).where(log.c.kind == name)
+    logged = select(log.c.record_id).where(log.c.kind == kind.name)
     count = connection.execute(
-        select(func.count()).select_from(table).where(table.c.id.not_in(logged))
+        select(func.count()).select_from(kind.table).where(kind.table.c.id.not_in(logged))
     ).scalar_one()
-    return [f"{count} {table.name} record(s) are not in the log of changes"] if count else []
+    return [f"{count} {kind.words} record(s) are not in the log of changes"] if count else []
