@@ -28,7 +28,7 @@ ADVICE: Final[dict[Outcome, str]] = {
 # Judgement, all of them: no source gives a figure for these.
 CONFIRMS_WITHIN: Final = timedelta(hours=30)  # a second low reading counts: the same morning or the next
 SIGNS_LAST: Final = timedelta(hours=12)  # what was stated earlier stands for so long
-FAR_BELOW: Final = 2.0  # as many times as far below the mean as the lower limit is
+FAR_BELOW_PCT: Final = 4.0  # under the limit: as much as an oximeter may err (ISO 80601-2-61, from memory)
 FALLING_PCT: Final = 3.0  # a drop between two low readings that is more than the oximeter's scatter
 LOW_GROUND_M: Final = 1500.0  # below it a symptom score is not put down to the elevation
 
@@ -106,9 +106,8 @@ def is_low(sample: Sample) -> bool:
 
 
 def is_far_below(sample: Sample) -> bool:
-    """Whether it lies much further down than the lower limit (FAR_BELOW, judgement)."""
-    expected = sample.expected
-    return sample.reading.spo2_pct < expected.mean_pct - FAR_BELOW * (expected.mean_pct - expected.low_pct)
+    """Whether it lies further below the lower limit than an oximeter may err (FAR_BELOW_PCT, judgement)."""
+    return sample.reading.spo2_pct < sample.expected.low_pct - FAR_BELOW_PCT
 
 
 def symptom_score(reading: Reading) -> int | None:

@@ -20,10 +20,13 @@ from planner.physiology.oxygen import inspired_po2_mmhg
 from planner.physiology.person import PersonPosterior
 from planner.season.exposure import exposure_history, where_is
 from planner.season.model import Driver, Leg, Place, Stay
+from planner.services.own import Past, person_before
 from planner.services.season import Calendar
 
 ONE_HOUR: Final = timedelta(hours=1)
+ONE_DAY: Final = timedelta(days=1)
 PRONOUNS: Final = {"woman": "her", "man": "him"}
+POSSESSIVES: Final = {"woman": "her", "man": "his"}
 LAST_DAY_NAMED: Final = 28  # later on the place says more than the count of days
 
 
@@ -39,11 +42,16 @@ class Whereabout:
 
 @dataclass(frozen=True)
 class DriverCourse:
-    """A driver with all stays and legs. `person` is what readings have taught of the driver, if anything."""
+    """A driver with all stays and legs, and what readings had taught when the present stay began.
+
+    What is measured during a stay teaches the range from the next stay on (judgement): a course that goes
+    wrong must not become its own yardstick. Without a `past` the range is the population's.
+    """
 
     calendar: Calendar
     driver: Driver
-    person: PersonPosterior | None = None
+    past: Past | None = None
+    as_of: datetime | None = None
 
     @cached_property
     def stays(self) -> list[Stay]:
@@ -78,6 +86,15 @@ class DriverCourse:
             pressures=self.calendar.pressures,
             track_days=self.calendar.days_at_the_track,
         )
+
+    @cached_property
+    def person(self) -> PersonPosterior | None:
+        """What the readings before the present stay say of this driver; None = the population."""
+        if self.past is None or self.as_of is None:
+            return None
+        arrived_at = self.where(self.as_of).arrived_at
+        before = self.as_of - ONE_DAY if arrived_at is None else min(arrived_at, self.as_of)
+        return person_before(self.driver.id, self.past, before, self.history, self.origin)
 
     def where(self, at: datetime) -> Whereabout:
         """Where the driver is: by the stay or leg, else where the last stay ended, else at home."""

@@ -22,9 +22,11 @@ from planner.monitoring.outcome import (
     Sample,
     judge,
 )
+from planner.monitoring.own_range import own_range_in_words
 from planner.season.model import Place
 from planner.services.air import SiteAir, site_air
-from planner.services.course import DriverCourse, Whereabout
+from planner.services.course import POSSESSIVES, DriverCourse, Whereabout
+from planner.services.own import Past
 from planner.services.places import pressure_in_force
 from planner.services.season import Calendar, read_calendar
 from planner.services.workspace import now
@@ -54,6 +56,7 @@ class DriverRow:
     reading: Reading | None
     last: Reading | None
     mornings: tuple[Morning, ...]
+    range_words: str = ""  # how much of the range is the driver's own
     notices: tuple[Notice, ...] = ()
 
     @property
@@ -98,11 +101,12 @@ def this_morning(store: Store, at: datetime) -> ThisMorning:
     calendar = read_calendar(store)
     since = at - timedelta(days=MORNINGS_SHOWN + 1)
     readings = store.readings(since=since, until=at + CLOCKS_DIFFER)
-    sick = [s for s in store.all(SickPeriod) if s.starts_at <= at]
+    past = Past.of(store, at)
+    sick = [s for s in past.sick_periods if s.starts_at <= at]
     notices = [n for n in store.all(Notice) if at - timedelta(hours=24) < n.at <= at]
     rows = []
     for driver in calendar.drivers:
-        course = DriverCourse(calendar, driver)
+        course = DriverCourse(calendar, driver, past, at)
         rows.append(
             _row(
                 course,
@@ -186,6 +190,7 @@ def _row(
         reading=reading,
         last=last,
         mornings=tuple(_mornings(days, ranges, all_judged, course)),
+        range_words=_range_words(course),
         notices=notices,
     )
 
@@ -225,6 +230,11 @@ def _not_measured(
     if last is None:
         return (f"{text} None in the last {MORNINGS_SHOWN} days.",)
     return (f"{text} Last {per_cent(last.spo2_pct)} on {day_and_clock(last.taken_at, where.place.zone)}.",)
+
+
+def _range_words(course: DriverCourse) -> str:
+    person = course.person
+    return "" if person is None else own_range_in_words(person, POSSESSIVES[course.driver.sex])
 
 
 def _mornings(

@@ -15,6 +15,7 @@ from planner.monitoring.outcome import CONFIRMS_WITHIN, SIGNS_LAST, Judgement, S
 from planner.season.model import Place
 from planner.services.course import DriverCourse
 from planner.services.morning import CLOCKS_DIFFER, judged
+from planner.services.own import Past
 from planner.services.season import read_calendar
 from planner.services.typed import local_instant
 from planner.store.store import Change, Store
@@ -127,13 +128,16 @@ def judge_entry(store: Store, reading: Reading) -> JudgedEntry:
     """A stored reading with its outcome, judged by those before it."""
     calendar = read_calendar(store)
     driver = next(d for d in calendar.drivers if d.id == reading.driver_id)
-    course = DriverCourse(calendar, driver)
+    past = Past.of(store, reading.taken_at)
+    course = DriverCourse(calendar, driver, past, reading.taken_at)
     before = store.readings(
         driver_id=driver.id,
         since=reading.taken_at - max(CONFIRMS_WITHIN, SIGNS_LAST),
         until=reading.taken_at,
     )
-    sample, judgement = judged(course, [*before, reading], store.all(SickPeriod, driver_id=driver.id))[-1]
+    sample, judgement = judged(
+        course, [*before, reading], [s for s in past.sick_periods if s.driver_id == driver.id]
+    )[-1]
     return JudgedEntry(driver.name, calendar.places[reading.place_id].zone, sample, judgement)
 
 

@@ -33,7 +33,8 @@ def row_html(row: DriverRow, now: datetime, *, low_pct: float, elsewhere: bool) 
         f"{place}</div>"
         f'<div class="p-number"><div class="p-value">{escaped(_value(row))}</div>'
         f"{_when(row, now)}</div>"
-        f'<div class="p-wide"><div class="p-why">{_reasons(row)}</div>{_notices(row, now)}</div>'
+        f'<div class="p-wide"><div class="p-why">{_reasons(row)}</div>'
+        f'<div class="p-small">{escaped(row.range_words)}</div>{_notices(row, now)}</div>'
         f'<div class="p-wide">{strip(row.mornings, low_pct)}</div>'
         "</div>"
     )
