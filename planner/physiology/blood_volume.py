@@ -1,7 +1,7 @@
 """What altitude does to the blood: plasma volume, haemoglobin mass, and the dose in kilometre hours.
 
 Each is a state that follows the exposure history with its own time constants, in closed form over every
-constant stretch, as breathing does. Tents and cabins count by the elevation at which plain air of the standard
+constant stretch, as breathing does. Tents and cabins count by the elevation at which the standard
 atmosphere has their inspired oxygen.
 """
 
@@ -28,7 +28,7 @@ PLASMA_TIME_D: Final = 1.0
 # published): 8 / -ln(0.74), computed.
 PLASMA_RETURN_TIME_D: Final = 26.6
 
-# Haemoglobin mass: +1.1 % per 100 h (Gore 2013, Br J Sports Med 47:i31, published) at about 2750 m (judgement)
+# Haemoglobin mass: +1.1 % per 100 h (Gore 2013, Br J Sports Med 47:i31, published), at 2750 m (judgement)
 # is 0.004 % per km h; that it fades with a time constant of 30 days is judgement.
 HAEMOGLOBIN_PCT_PER_KM_H: Final = 0.004
 HAEMOGLOBIN_TIME_D: Final = 30.0

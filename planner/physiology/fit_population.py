@@ -67,9 +67,9 @@ PARAMETERS: Final = (
         "acute_asymptote_mmhg",
         "inspired oxygen at which the whole response would come at once",
         "mmHg",
-        68.0,
-        4.0,
-        "the asymptote of 32 mmHg alveolar of Weil 1970 (from memory) carried to the windpipe",
+        56.0,
+        3.0,
+        "32 mmHg in the alveoli (Weil 1970, from memory) and about 22 mmHg of PaCO2 there: judgement",
     ),
     _fitted(
         "acute_half_mmhg",

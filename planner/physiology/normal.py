@@ -44,7 +44,7 @@ def _mixture_quantile(probability: float, weight: FloatArray, mean: FloatArray, 
         high = np.where(miss > 0.0, at, high)
         low = np.where(miss > 0.0, low, at)
         step = at - miss / np.maximum(slope, 1e-12)
-        at = np.where((step > low) & (step < high), step, 0.5 * (low + high))
+        at = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
     return np.asarray(at)
 
 
