@@ -273,6 +273,8 @@ def test_a_backup_is_a_single_file_with_what_is_still_in_the_write_ahead_log(
     assert store.path.with_name(store.path.name + "-wal").stat().st_size > 0
     target = tmp_path / "backup.db"
     store.backup(target)
+    rollback_journal = b"\x01\x01"  # SQLite's file format, 1.3.3 (published): a write-ahead log would be 2, 2
+    assert target.read_bytes()[18:20] == rollback_journal
     lonely = tmp_path / "elsewhere" / "moved.db"
     lonely.parent.mkdir()
     lonely.write_bytes(target.read_bytes())

@@ -19,6 +19,7 @@ from planner.monitoring import model as monitoring_model
 from planner.monitoring.model import Reading
 from planner.season import model as season_model
 from planner.season.model import Driver, Place, Round, Stay
+from planner.store.records import KINDS
 from planner.store.schema import TABLES, metadata
 from planner.store.store import Store
 
@@ -43,6 +44,15 @@ def test_columns_equal_the_fields(record: type) -> None:
         if field.name != "id":
             optional = "None" in str(field.type)
             assert table.c[field.name].nullable == optional, f"{record.__name__}.{field.name}"
+
+
+@pytest.mark.parametrize("record", TABLES, ids=lambda record: record.__name__)
+def test_rows_and_records_have_one_order(record: type) -> None:
+    """Records are made from rows by position, and rows written by it."""
+    names = [field.name for field in fields(record)]
+    assert names[-1] == "id"
+    assert list(KINDS[record].fields) == names[:-1]
+    assert list(TABLES[record].c.keys()) == ["id", *names[:-1], "removed_in"]
 
 
 def test_references_are_foreign_keys() -> None:

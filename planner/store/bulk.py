@@ -17,19 +17,19 @@ from planner.store.columns import UtcInstant, Words, words
 from planner.store.records import KINDS, Kind, from_json
 
 
-def insert_rows(
-    connection: Connection, kind: Kind, ids: Sequence[int], rows: Sequence[dict[str, Any]]
+def insert_columns(
+    connection: Connection, kind: Kind, ids: Sequence[int], columns: Sequence[Sequence[Any]]
 ) -> None:
-    """Insert rows of a kind's fields. The statement is built once, and only the columns that need it are
-    converted: half the time of handing the rows to the statement builder one by one."""
-    fields = ("id", *kind.fields)
-    statement = str(insert(kind.table).values(dict.fromkeys(fields)).compile(dialect=connection.dialect))
-    columns: list[Sequence[Any]] = [ids]
-    for field in kind.fields:
+    """Insert records by their columns, one for each of the kind's fields. The statement is built once, and
+    only what needs it is converted: half the time of handing the rows to the statement builder one by one."""
+    # The statement names the columns in the order of the table: the id, then the fields (a test says so).
+    names = dict.fromkeys(("id", *kind.fields))
+    statement = str(insert(kind.table).values(names).compile(dialect=connection.dialect))
+    written: list[Sequence[Any]] = [ids]
+    for field, values in zip(kind.fields, columns, strict=True):
         bind = kind.table.c[field].type.dialect_impl(connection.dialect).bind_processor(connection.dialect)
-        values = [row[field] for row in rows]
-        columns.append(values if bind is None else [bind(value) for value in values])
-    connection.exec_driver_sql(statement, list(zip(*columns, strict=True)))
+        written.append(values if bind is None else [bind(value) for value in values])
+    connection.exec_driver_sql(statement, list(zip(*written, strict=True)))
 
 
 def reading_columns(

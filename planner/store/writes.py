@@ -7,6 +7,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from itertools import takewhile
+from operator import attrgetter
 from typing import Any
 
 from sqlalchemy import Column, Connection, func, insert, literal, select, update
@@ -14,7 +15,7 @@ from sqlalchemy.exc import IntegrityError
 
 from planner.errors import InputError, NotFoundError, StoreError
 from planner.store import schema
-from planner.store.bulk import insert_rows
+from planner.store.bulk import insert_columns
 from planner.store.history import Action, ChangeSet, in_force, newest_first
 from planner.store.records import (
     KIND_BY_NAME,
@@ -75,17 +76,19 @@ class OpenChangeSet:
 
     def _add_kind(self, record: type[R], records: Sequence[R], why: str) -> list[R]:
         kind = KINDS[record]
-        rows = [values_of(kind, each) for each in records]
-        self._check_references(kind, rows)
+        rows = list(map(attrgetter(*kind.fields), records))
+        columns = list(zip(*rows, strict=True))
+        for field, values in zip(kind.fields, columns, strict=True):
+            self._check_references(kind, field, values)
         # Rows are never deleted, so the ids after the highest one are free as long as the write lock is held.
         highest = self.connection.execute(select(func.coalesce(func.max(kind.table.c.id), 0))).scalar_one()
         ids = range(highest + 1, highest + 1 + len(rows))
         try:
-            insert_rows(self.connection, kind, ids, rows)
+            insert_columns(self.connection, kind, ids, columns)
         except IntegrityError as error:
-            raise self._why_refused(kind, rows, error) from error
+            raise self._why_refused(kind, map(vars, records), error) from error
         self._log_where(kind, "add", kind.table.c.id > highest, why)
-        return [record_from(record, (*row.values(), id)) for row, id in zip(rows, ids, strict=True)]
+        return [record_from(record, (*row, id)) for row, id in zip(rows, ids, strict=True)]
 
     # Changing, removing, restoring --------------------------------------------------------------------------
 
@@ -97,7 +100,8 @@ class OpenChangeSet:
         before = self._live(kind, record.id).values
         after = values_of(kind, record)
         if before != after:
-            self._check_references(kind, [after])
+            for field, value in after.items():
+                self._check_references(kind, field, [value])
             self._update(kind, record.id, after)
             self._log_change(kind, record.id, before, why)
         return record
@@ -307,17 +311,16 @@ class OpenChangeSet:
             ).scalars()
         }
 
-    def _check_references(self, kind: Kind, rows: Sequence[Mapping[str, Any]]) -> None:
-        for field in kind.fields:
-            for key in kind.table.c[field].foreign_keys:
-                parent = KIND_BY_TABLE[key.column.table.name]
-                wanted = {row[field] for row in rows} - {None}
-                missing = wanted - self._ids_where(parent, wanted, live=True)
-                if missing:
-                    raise InputError(field, min(missing), f"the id of a stored {parent.words}")
+    def _check_references(self, kind: Kind, field: str, values: Iterable[Any]) -> None:
+        for key in kind.table.c[field].foreign_keys:
+            parent = KIND_BY_TABLE[key.column.table.name]
+            wanted = set(values) - {None}
+            missing = wanted - self._ids_where(parent, wanted, live=True)
+            if missing:
+                raise InputError(field, min(missing), f"the id of a stored {parent.words}")
 
     def _why_refused(
-        self, kind: Kind, rows: Sequence[Mapping[str, Any]], error: IntegrityError, except_id: int = 0
+        self, kind: Kind, rows: Iterable[Mapping[str, Any]], error: IntegrityError, except_id: int = 0
     ) -> Exception:
         """Which record is there already; looked for only after the database refused."""
         unique = schema.UNIQUE.get(kind.record, ())
