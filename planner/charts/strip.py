@@ -14,7 +14,7 @@ from typing import Final
 
 from planner.charts.theme import LEFT_OUT_STYLE, OUTCOME_STYLES
 from planner.monitoring.mornings import JudgedReading, Morning
-from planner.wording import day, per_cent, per_cent_range
+from planner.wording import counted, day, per_cent, per_cent_range
 
 TOP_PCT: Final = 100.5
 LEAST_SPAN_PCT: Final = 8.0  # so that a point of saturation never fills the strip
@@ -76,9 +76,9 @@ def in_words(mornings: Sequence[Morning]) -> str:
     """The strip as a sentence, for those who do not see it."""
     read = [j for m in mornings for j in m.readings]
     if not read:
-        return f"No readings in the last {len(mornings)} mornings."
+        return f"No readings in the last {counted(len(mornings), 'morning')}."
     values = ", ".join(per_cent(j.reading.spo2_pct) for j in read)
-    return f"SpO2 of the last {len(mornings)} mornings, oldest first: {values}."
+    return f"SpO2 of the last {counted(len(mornings), 'morning')}, oldest first: {values}."
 
 
 def floor_pct(mornings: Sequence[Morning]) -> float:
