@@ -1,4 +1,4 @@
-"""What an oximeter is expected to read: held-back figures, what always holds, and the range's own arithmetic."""
+"""What an oximeter is expected to read: figures held back, what always holds, and the arithmetic."""
 
 from __future__ import annotations
 
@@ -64,9 +64,7 @@ def test_rises_with_days_there(wakefulness: str, elevation: float, days: float, 
 @given(elevation=ELEVATIONS, state=st.floats(0.0, 0.5), more=st.floats(0.001, 0.1))
 def test_more_acclimatisation_is_never_worse(elevation: float, state: float, more: float) -> None:
     inspired = inspired_at(elevation)
-    less_of_it, more_of_it = (
-        arterial_gases(inspired, s).saturation_pct for s in (state, state + more)
-    )
+    less_of_it, more_of_it = (arterial_gases(inspired, s).saturation_pct for s in (state, state + more))
     assert more_of_it > less_of_it
 
 

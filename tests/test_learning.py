@@ -24,7 +24,9 @@ SEASON = history_of((LONG_AGO_H, 0.0), (240.0, 1600.0), (408.0, 0.0), (720.0, 23
 DAYS_READ = np.array([1, 2, 4, 6, 8, 11, 12, 14, 16, 19, 25, 31, 32, 33, 35, 36, 40, 45]) * 24.0
 
 
-def taught(history: ExposureHistory, at_h: FloatArray, read: FloatArray, device: str = "a") -> PersonPosterior:
+def taught(
+    history: ExposureHistory, at_h: FloatArray, read: FloatArray, device: str = "a"
+) -> PersonPosterior:
     return learned(
         history.inspired_at(at_h),
         np.asarray(ventilatory_state_at(history, at_h)),
@@ -206,7 +208,8 @@ def test_readings_aloft_tell_how_somebody_breathes() -> None:
     at_h = np.arange(2, 12) * 24.0
     random = np.random.default_rng(9)
     strong, weak = (
-        taught(history, at_h, SimulatedDriver(z, 0.0, 0.0).readings(history, at_h, random)) for z in (1.5, -1.5)
+        taught(history, at_h, SimulatedDriver(z, 0.0, 0.0).readings(history, at_h, random))
+        for z in (1.5, -1.5)
     )
     assert strong.breathing.mean > 0.4 > -0.4 > weak.breathing.mean
     assert strong.breathing.sd < 0.8
