@@ -210,6 +210,17 @@ def test_instants_keep_their_moment_across_clock_changes(store: Store) -> None:
     assert first.utcoffset() == timedelta(0)
 
 
+def test_the_same_instant_in_a_repeated_hour_is_no_change(store: Store) -> None:
+    """Python holds such an instant unequal to itself in another zone (PEP 495)."""
+    home, driver = with_team(store)
+    repeated = datetime(2026, 10, 25, 1, 30, tzinfo=ZoneInfo("Europe/Lisbon"), fold=1)
+    kept = store.add(Reading(driver.id, home.id, repeated, 96.0), by=BY)
+    assert kept.taken_at.tzinfo is UTC
+    assert kept == store.get(Reading, kept.id)
+    assert store.change(replace(kept, taken_at=repeated), by=BY) == kept
+    assert len(store.changes(Reading, kept.id)) == 1
+
+
 def test_times_across_the_date_line_stay_in_order(store: Store) -> None:
     home, driver = with_team(store)
     east = datetime(2026, 6, 2, 6, 0, tzinfo=ZoneInfo("Pacific/Kiritimati"))  # UTC+14

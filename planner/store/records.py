@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, fields, replace
-from datetime import date, datetime
+from datetime import UTC, date, datetime
 from typing import Any, TypeAlias, TypeVar
 
 import numpy as np
@@ -112,11 +112,19 @@ def problems(record: Record) -> list[InputError]:
 
 
 def plain(record: R) -> R:
-    """The record with numpy's scalars as Python's."""
-    foreign: dict[str, Any] = {
-        name: _PLAIN[type(value)](value) for name, value in vars(record).items() if type(value) in _PLAIN
-    }
-    return replace(record, **foreign) if foreign else record
+    """The record with numpy's scalars as Python's, and its instants in UTC.
+
+    In UTC also because an instant in an hour that the clocks repeat compares unequal to itself in any other
+    zone (PEP 495), so that a change would be seen where there is none.
+    """
+    replaced: dict[str, Any] = {}
+    for name, value in vars(record).items():
+        if isinstance(value, datetime):
+            if value.tzinfo is not UTC and value.utcoffset() is not None:
+                replaced[name] = value.astimezone(UTC)
+        elif type(value) in _PLAIN:
+            replaced[name] = _PLAIN[type(value)](value)
+    return replace(record, **replaced) if replaced else record
 
 
 def values_of(kind: Kind, record: Record) -> dict[str, Any]:

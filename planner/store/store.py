@@ -293,7 +293,7 @@ class Store:
             id = connection.execute(
                 insert(schema.change_set).returning(schema.change_set.c.id), {"at": at, "by": by, "why": why}
             ).scalar_one()
-            self._thread.change_set = current = OpenChangeSet(connection, id, by, at)
+            self._thread.change_set = current = OpenChangeSet(connection, id, by)
             try:
                 yield current
             finally:

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from datetime import datetime
 from itertools import takewhile
 from operator import attrgetter
 from typing import Any
@@ -52,7 +51,6 @@ class OpenChangeSet:
     connection: Connection
     id: int
     by: str
-    at: datetime
     records_written: bool = False
     settings_written: bool = False
 
