@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from datetime import datetime
 
-import pandas as pd
 import streamlit as st
 
 from planner.charts.season import season_chart
@@ -19,6 +18,7 @@ from planner.services.season import (
     whereabouts,
 )
 from planner.ui.cached import calendar_of
+from planner.ui.frames import frame
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.tables import note, table
 from planner.units import from_house
@@ -49,13 +49,15 @@ def show_season(ctx: Context, calendar: Calendar) -> None:
     answer(headline(ctx, calendar))
     driver = None
     if calendar.drivers:
-        driver = st.selectbox(
+        drivers = {each.id: each for each in calendar.drivers}
+        chosen = st.selectbox(
             "Driver",
-            calendar.drivers,
-            format_func=lambda each: each.name,
-            key="season_driver",
+            list(drivers),
+            format_func=lambda id: drivers[id].name,
+            key="driver_shown",
             persist_state="session",
         )
+        driver = drivers[chosen]
     show_landscape(ctx, calendar, driver)
     if driver is not None:
         show_high_rounds(ctx, calendar, driver)
@@ -213,13 +215,6 @@ def whereabouts_row(ctx: Context, calendar: Calendar, found: Whereabouts) -> lis
         way = f"on the way from {places[holding.from_place_id].name} to {places[holding.to_place_id].name}"
         return [found.driver.name, way, DASH, DASH, onward]
     return [found.driver.name, "no stay planned", DASH, DASH, onward]
-
-
-def frame(rows: list[tuple[object, ...]], *columns: str) -> pd.DataFrame:
-    """Rows as a frame, instants in UTC without a zone, as the chart's axis reads them."""
-    table_of = pd.DataFrame(rows, columns=list(columns))
-    table_of["at"] = pd.to_datetime(table_of["at"], utc=True).dt.tz_localize(None)
-    return table_of
 
 
 main()

@@ -43,12 +43,14 @@ def season_chart(
         scale=alt.Scale(type="utc"),
         axis=alt.Axis(format="%b", tickCount="month", grid=False, labelOverlap=True),
     )
-    ticks = [value for value in _round_steps(highest) if value <= highest]
     y = alt.Y(
         "elevation:Q",
         title=f"elevation, {unit}",
         scale=scale,
-        axis=alt.Axis(values=ticks, labelExpr="replace(format(datum.value, ','), ',', '\\u2009')"),
+        axis=alt.Axis(
+            values=elevation_steps(highest, 6),
+            labelExpr="replace(format(datum.value, ','), ',', '\\u2009')",
+        ),
     )
     land = (
         alt.Chart(ground)
@@ -93,7 +95,7 @@ def _today(today: datetime, x: alt.X, mode: Mode) -> list[Any]:
 
 def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     """Each round as a point on the ground with its name standing on it."""
-    base = alt.Chart(rounds.assign(apart=_apart(rounds))).encode(
+    base = alt.Chart(rounds.assign(apart=names_apart(rounds))).encode(
         x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")]
     )
     high = base.transform_filter(f"datum.high && (width >= {NARROW_PX} || datum.apart)")
@@ -110,8 +112,11 @@ def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any
     ]
 
 
-def _apart(rounds: pd.DataFrame) -> list[bool]:
-    """Which names have room on a narrow screen: the highest rounds first, each far enough from the others."""
+def names_apart(rounds: pd.DataFrame) -> list[bool]:
+    """Tell which names have room on a narrow screen: the highest first, each far enough from the others.
+
+    Parameters: `rounds` has the columns `at` and `elevation`.
+    """
     span = rounds["at"].max() - rounds["at"].min()
     kept: list[int] = []
     for i in rounds["elevation"].sort_values(ascending=False).index:
@@ -120,7 +125,7 @@ def _apart(rounds: pd.DataFrame) -> list[bool]:
     return [i in kept for i in rounds.index]
 
 
-def _round_steps(highest: float) -> list[float]:
-    """Axis values in steps that a person reads easily."""
-    step = next((s for s in (100, 250, 500, 1000, 2000, 5000) if highest / s <= 6), 10000)
+def elevation_steps(highest: float, most: int) -> list[float]:
+    """Axis values up to the highest elevation, at most so many beside zero, in steps that read easily."""
+    step = next((s for s in (100, 250, 500, 1000, 2000, 5000) if highest / s <= most), 10000)
     return [float(value) for value in range(0, int(highest) + 1, step)]

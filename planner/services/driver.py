@@ -1,0 +1,201 @@
+"""How a driver responds: the course, the own range along it, and why each reading came out as it did."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from datetime import datetime, time, timedelta
+from functools import cached_property
+from itertools import groupby
+from math import ceil
+from typing import Final, Literal, TypeAlias
+from zoneinfo import ZoneInfo
+
+from planner.monitoring.model import Reading
+from planner.monitoring.outcome import CONFIRMS_WITHIN, SIGNS_LAST, ExpectedRange, Judgement, Sample
+from planner.monitoring.own_range import why_it_teaches_nothing
+from planner.physiology.expectation import Expectation, expected_spo2
+from planner.physiology.person import PersonPosterior
+from planner.season.model import Driver
+from planner.services.course import ONE_HOUR, DriverCourse
+from planner.services.morning import CLOCKS_DIFFER, judged
+from planner.services.own import Past, person_before
+from planner.services.season import Calendar, RoundCost, round_costs
+from planner.store.store import Store
+
+Window: TypeAlias = Literal["12 weeks", "season", "all"]
+
+# A chart of more days than this is drawn from every second, third, ... morning.
+MOST_MORNINGS: Final = 366
+MORNING: Final = time(6)  # UTC; the range hardly moves within a day
+WEEKS_BEHIND, WEEKS_AHEAD = timedelta(weeks=10), timedelta(weeks=2)
+SEASON_BEHIND: Final = timedelta(days=330)
+UTC: Final = ZoneInfo("UTC")
+
+
+@dataclass(frozen=True)
+class JudgedMark:
+    """A reading with its outcome by what was known then; `teaches_nothing` says why it is left out."""
+
+    sample: Sample
+    judgement: Judgement
+    teaches_nothing: str
+
+    @property
+    def reading(self) -> Reading:
+        """The reading itself."""
+        return self.sample.reading
+
+
+@dataclass(frozen=True)
+class BandPoint:
+    """The range of a reading awake at rest at one instant: the driver's own and the population's."""
+
+    at: datetime
+    own: ExpectedRange
+    population: ExpectedRange
+
+
+@dataclass(frozen=True)
+class Explanation:
+    """One reading taken apart, by what was known when it was taken.
+
+    `own` and `population` are the expectations for that instant, with the chain from air to blood and the
+    parts of the spread; `residual_pct` is the reading less the middle of the own range.
+    """
+
+    mark: JudgedMark
+    readings_known: int
+    own: Expectation
+    population: Expectation
+    residual_pct: float
+
+
+@dataclass(frozen=True)
+class DriverView:
+    """All that the Driver page shows of one driver at one state of the store."""
+
+    calendar: Calendar
+    driver: Driver
+    readings: tuple[Reading, ...]
+    past: Past
+    now: datetime
+
+    @cached_property
+    def population(self) -> DriverCourse:
+        """The course for somebody of whom nothing is known."""
+        return DriverCourse(self.calendar, self.driver)
+
+    @cached_property
+    def person(self) -> PersonPosterior:
+        """What all readings so far have taught."""
+        course = self.population
+        return person_before(self.driver.id, self.past, self.now, course.history, course.origin)
+
+    @cached_property
+    def marks(self) -> tuple[JudgedMark, ...]:
+        """Every reading, oldest first, judged as on its morning."""
+        found: list[JudgedMark] = []
+        sick = [period for period in self.past.sick_periods if period.driver_id == self.driver.id]
+        for course, ours in self._by_stay([reading.taken_at for reading in self.readings]):
+            since = self.readings[ours.start].taken_at - max(CONFIRMS_WITHIN, SIGNS_LAST)
+            context = [r for r in self.readings[: ours.start] if r.taken_at >= since]
+            results = judged(course, [*context, *self.readings[ours]], sick)[len(context) :]
+            found += [
+                JudgedMark(sample, judgement, why_it_teaches_nothing(sample.reading, sick))
+                for sample, judgement in results
+            ]
+        return tuple(found)
+
+    def band(self, since: datetime, until: datetime) -> list[BandPoint]:
+        """The own and the population's range along the course, with a step at every arrival.
+
+        The own range is the one that was known then; for times to come, the one known now.
+        """
+        instants = self._instants(since, until)
+        own: list[ExpectedRange] = []
+        for course, ours in self._by_stay(instants):
+            own += course.expected(instants[ours])
+        population = self.population.expected(instants)
+        return [BandPoint(*each) for each in zip(instants, own, population, strict=True)]
+
+    def next_high_round(self) -> tuple[RoundCost, RoundCost] | None:
+        """The next high round by what is known of the driver now, and by the population alone."""
+        pairs = zip(
+            round_costs(self.calendar, self.driver, self.person),
+            round_costs(self.calendar, self.driver),
+            strict=True,
+        )
+        return next((pair for pair in pairs if pair[0].first_session.starts_at > self.now), None)
+
+    def explanation(self, reading_id: int) -> Explanation:
+        """Take one reading apart: what was expected, from what, and how sure that was."""
+        mark = next(each for each in self.marks if each.reading.id == reading_id)
+        reading = mark.reading
+        course = self.course_at(reading.taken_at)
+        at_h = (reading.taken_at - course.origin) / ONE_HOUR
+        own, population = (
+            expected_spo2(course.history, at_h, wakefulness=reading.wakefulness, person=person)
+            for person in (course.person, None)
+        )
+        return Explanation(
+            mark=mark,
+            readings_known=course.person.readings if course.person else 0,
+            own=own,
+            population=population,
+            residual_pct=reading.spo2_pct - mark.sample.expected.mean_pct,
+        )
+
+    def window(self, chosen: Window) -> tuple[datetime, datetime]:
+        """From when to when the chart runs."""
+        if chosen == "12 weeks":
+            return self.now - WEEKS_BEHIND, self.now + WEEKS_AHEAD
+        starts = [self.calendar.starts_at(each) for each in self.calendar.rounds]
+        ends = [self.calendar.ends_at(each) for each in self.calendar.rounds]
+        begun = [*starts, *(reading.taken_at for reading in self.readings)]
+        if chosen == "season":
+            begun = [at for at in begun if at > self.now - SEASON_BEHIND]
+        margin = timedelta(days=5)
+        return min([*begun, self.now]) - margin, max([*ends, self.now]) + margin
+
+    def course_at(self, at: datetime) -> DriverCourse:
+        """The course with what was known at an instant."""
+        course = replace(self.population, past=self.past, as_of=at)
+        # The itinerary is the same, so what was worked out of it need not be worked out for every stay.
+        vars(course).update({name: getattr(self.population, name) for name in ("stays", "legs", "history")})
+        return course
+
+    def _by_stay(self, instants: Sequence[datetime]) -> list[tuple[DriverCourse, slice]]:
+        """Split ascending instants where another stay, and with it another knowledge, begins."""
+
+        def arrival(i: int) -> datetime:
+            return self.population.where(instants[i]).arrived_at or instants[i]
+
+        parts: list[tuple[DriverCourse, slice]] = []
+        for _, group in groupby(range(len(instants)), key=arrival):
+            numbers = list(group)
+            parts.append((self.course_at(instants[numbers[0]]), slice(numbers[0], numbers[-1] + 1)))
+        return parts
+
+    def _instants(self, since: datetime, until: datetime) -> list[datetime]:
+        days = (until - since).days + 1
+        step = ceil(days / MOST_MORNINGS)
+        first = since.astimezone(UTC).date()
+        chosen = {datetime.combine(first + timedelta(days=i), MORNING, UTC) for i in range(0, days + 1, step)}
+        if step == 1:
+            for stay in self.population.stays:
+                chosen |= {stay.arrive_at, stay.depart_at - timedelta(minutes=1)}
+        # On the way the range would follow the cabin down and up again: there it is left out.
+        on_the_way = [(leg.depart_at, leg.arrive_at) for leg in self.population.legs]
+        return sorted(
+            at
+            for at in chosen
+            if since <= at <= until and not any(depart <= at < arrive for depart, arrive in on_the_way)
+        )
+
+
+def driver_view(store: Store, calendar: Calendar, driver: Driver, now: datetime) -> DriverView:
+    """Return what is known of a driver now."""
+    until = now + CLOCKS_DIFFER
+    readings = store.readings(driver_id=driver.id, until=until)
+    return DriverView(calendar, driver, tuple(readings), Past.of(store, until), now)
