@@ -253,7 +253,8 @@ def test_the_timeline_holds_the_whole_plan() -> None:
     assert [(s.from_h, s.to_h) for s in steps[1:]] == [(-2.0, 0.0), (0.0, 1.0), (1.0, 2.0), (2.0, 3.5)]
     assert sum(step.amount_ml.best for step in steps[2:4]) == pytest.approx(found.in_car_ml.best)
     last = timeline(plan(urine_dark=0.0), 1.0, 1)
-    assert [step.label for step in last] == ["four hours before", "in the car", "after"]
+    assert [step.label for step in last] == ["four hours before", "two hours before", "in the car", "after"]
+    assert last[1].amount_ml == Range(0.0, 0.0, 0.0)
     assert last[-1].to_h == 3.0
 
 

@@ -113,7 +113,7 @@ def _mass_reasons(
     if change is None:
         return [f"no baseline yet: {BASELINE_MORNINGS} mornings make one"]
     direction = "below" if change < 0.0 else "above"
-    return [f"mass {number(abs(change), 1)} % {direction} the own {mass(baseline, units)}"]
+    return [f"mass {number(abs(change), 1)} % {direction} the usual {mass(baseline, units)}"]
 
 
 def _urine_reasons(mark: MorningMark) -> list[str]:

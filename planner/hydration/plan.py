@@ -157,8 +157,7 @@ def timeline(
 ) -> list[TimelineStep]:
     """The plan of one driver from four hours before the start to two after the end."""
     steps = [TimelineStep(TIMELINE_FROM_H, TOP_UP_AT_H, plan.four_hours_before_ml, "four hours before")]
-    if float(np.asarray(plan.two_hours_before_ml.high)) > 0.0:
-        steps.append(TimelineStep(TOP_UP_AT_H, 0.0, plan.two_hours_before_ml, "two hours before"))
+    steps.append(TimelineStep(TOP_UP_AT_H, 0.0, plan.two_hours_before_ml, "two hours before"))
     a_stint = session_hours / stints
     for stint in range(stints):
         label = "in the car" if stints == 1 else f"in the car, stint {stint + 1}"
