@@ -113,8 +113,9 @@ def checked(quantity: str, value: FloatLike, field: str | None = None) -> FloatA
     outside = (array < known.low) | (array > known.high)
     if outside.any():
         worst = float(array[outside].flat[0]) if array.ndim else float(array)
+        unit = "" if known.unit == "1" else f" {known.unit}"  # a pure number has no unit to print
         raise InputError(
-            field or quantity, worst, f"{known.low:g} to {known.high:g} {known.unit} ({known.meaning})"
+            field or quantity, worst, f"{known.low:g} to {known.high:g}{unit} ({known.meaning})"
         )
     return array
 
