@@ -38,7 +38,8 @@ def test_the_ends_of_every_range_are_accepted_and_what_lies_beyond_is_refused(qu
             checked(quantity.name, beyond)
         message = str(refused.value)
         assert quantity.name in message
-        assert f"{quantity.low:g} to {quantity.high:g} {quantity.unit}" in message
+        unit = "" if quantity.unit == "1" else f" {quantity.unit}"
+        assert f"{quantity.low:g} to {quantity.high:g}{unit} ({quantity.meaning})" in message
         assert "\n" not in message
 
 
