@@ -11,14 +11,19 @@ import sys
 import time
 import urllib.error
 import urllib.request
-from collections.abc import Iterator
-from dataclasses import dataclass, field
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field, replace
 from pathlib import Path
+from typing import TypeAlias
 from urllib.parse import urlsplit
 
 import pytest
-from playwright.sync_api import Browser, Page, Response, sync_playwright
+from playwright.sync_api import Browser, BrowserContext, Page, Response, sync_playwright
 from screens import PAGES
+
+from planner.charts.theme import colour
+from planner.season.model import Driver
+from planner.store.store import Store
 
 pytestmark = pytest.mark.browser
 
@@ -53,14 +58,21 @@ def free_port() -> int:
 
 
 @pytest.fixture(scope="module")
-def address(demo_file: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
-    """The app as a user starts it, with the demo season in a file of its own, from another folder."""
+def store_file(demo_file: Path, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The demo season in a file of its own, which the server of this module uses."""
+    path = tmp_path_factory.mktemp("served") / "planner.db"
+    shutil.copyfile(demo_file, path)
+    return path
+
+
+@pytest.fixture(scope="module")
+def address(store_file: Path) -> Iterator[str]:
+    """The app as a user starts it, from another folder than the checkout."""
     chromium()
-    folder = tmp_path_factory.mktemp("served")
-    shutil.copyfile(demo_file, folder / "planner.db")
+    folder = store_file.parent
     port = free_port()
     log = (folder / "server.log").open("w")
-    command = [sys.executable, "-m", "planner", "--store", str(folder / "planner.db"), "--port", str(port)]
+    command = [sys.executable, "-m", "planner", "--store", str(store_file), "--port", str(port)]
     server = subprocess.Popen(command, cwd=folder, stdout=log, stderr=subprocess.STDOUT)
     url = f"http://localhost:{port}"
     try:
@@ -82,14 +94,6 @@ def wait_until_it_answers(url: str, server: subprocess.Popen[bytes]) -> None:
         except (urllib.error.URLError, ConnectionError, TimeoutError):
             time.sleep(0.2)
     pytest.fail("the server did not answer within a minute")
-
-
-@pytest.fixture(scope="module")
-def browser() -> Iterator[Browser]:
-    with sync_playwright() as playwright:
-        opened = playwright.chromium.launch(executable_path=chromium(), args=FLAGS)
-        yield opened
-        opened.close()
 
 
 @dataclass
@@ -118,14 +122,44 @@ class Watched:
             self.failed.append(f"{response.url}: {response.status}")
 
 
-def opened(browser: Browser, address: str, path: str, window: str, scheme: str) -> Watched:
+Visit: TypeAlias = Callable[..., Watched]
+
+
+@pytest.fixture(scope="module")
+def browser() -> Iterator[Browser]:
+    with sync_playwright() as playwright:
+        launched = playwright.chromium.launch(executable_path=chromium(), args=FLAGS)
+        yield launched
+        launched.close()
+
+
+@pytest.fixture
+def visit(browser: Browser, address: str) -> Iterator[Visit]:
+    """Opens a page of the app in a window of its own kind; closed again after the test."""
+    pages: list[Page] = []
+
+    def opened(path: str = "", window: str = "laptop", scheme: str = "light") -> Watched:
+        watched = Watched(context_of(browser, window, scheme).new_page(), urlsplit(address).netloc)
+        pages.append(watched.page)
+        watched.begin()
+        watched.page.goto(f"{address}/{path}")
+        settled(watched.page)
+        return watched
+
+    yield opened
+    for page in pages:
+        page.close()
+
+
+def context_of(browser: Browser, window: str, scheme: str) -> BrowserContext:
+    """One context for each kind of window and theme, so that the frontend is fetched once for it."""
     width, height = WINDOWS[window]
+    for context in browser.contexts:
+        if context.pages and context.pages[0].title() == f"{window} {scheme}":
+            return context
     context = browser.new_context(viewport={"width": width, "height": height}, color_scheme=scheme)
-    watched = Watched(context.new_page(), urlsplit(address).netloc)
-    watched.begin()
-    watched.page.goto(f"{address}/{path}")
-    settled(watched.page)
-    return watched
+    context.new_page().set_content(f"<title>{window} {scheme}</title>")
+    return context
 
 
 def settled(page: Page) -> None:
@@ -141,8 +175,8 @@ def path_of(stem: str) -> str:
 
 @pytest.mark.parametrize("window", WINDOWS)
 @pytest.mark.parametrize("stem", PAGES)
-def test_a_page_is_whole(browser: Browser, address: str, stem: str, window: str) -> None:
-    watched = opened(browser, address, path_of(stem), window, "light")
+def test_a_page_is_whole(visit: Visit, stem: str, window: str) -> None:
+    watched = visit(path_of(stem), window)
     page = watched.page
     assert page.locator('[data-testid="stException"], [data-testid="stAlertContentError"]').count() == 0
     assert "Traceback" not in page.inner_text("body")
@@ -151,7 +185,6 @@ def test_a_page_is_whole(browser: Browser, address: str, stem: str, window: str)
     assert watched.failed == []
     assert watched.left == []
     assert watched.said == []
-    page.context.close()
 
 
 def overflow(page: Page) -> list[str]:
@@ -169,26 +202,23 @@ def overflow(page: Page) -> list[str]:
 
 
 @pytest.mark.parametrize("scheme", ["light", "dark"])
-def test_the_page_follows_the_readers_theme(browser: Browser, address: str, scheme: str) -> None:
-    from planner.charts.theme import colour
-
-    watched = opened(browser, address, "", "laptop", scheme)
+def test_the_page_follows_the_readers_theme(visit: Visit, scheme: str) -> None:
+    watched = visit(scheme=scheme)
     seen = {
         "page": watched.page.evaluate("getComputedStyle(document.querySelector('.stApp')).backgroundColor"),
         "muted": watched.page.evaluate("getComputedStyle(document.querySelector('.p-over')).color"),
     }
     wanted = {name: rgb(colour(name, scheme)) for name in seen}
     assert seen == wanted
-    watched.page.context.close()
 
 
 def rgb(hex_colour: str) -> str:
     return "rgb({}, {}, {})".format(*(int(hex_colour[i : i + 2], 16) for i in (1, 3, 5)))
 
 
-def test_a_reading_is_typed_on_a_phone(browser: Browser, address: str) -> None:
+def test_a_reading_is_typed_on_a_phone(visit: Visit, address: str) -> None:
     """Driver and circumstances are set already: a number, perhaps a pulse, one button."""
-    watched = opened(browser, address, "", "phone", "light")
+    watched = visit(window="phone")
     page = watched.page
     assert "1 not measured" in page.inner_text("h1.p-answer")
     page.get_by_role("button", name="Measure", exact=True).click()
@@ -204,18 +234,38 @@ def test_a_reading_is_typed_on_a_phone(browser: Browser, address: str) -> None:
     assert "not measured" not in page.inner_text("h1.p-answer")
     assert watched.failed == []
     assert watched.left == []
-    page.context.close()
 
 
-def test_the_emergency_signs_are_one_tap_away(browser: Browser, address: str) -> None:
-    watched = opened(browser, address, "", "phone", "light")
+def test_the_emergency_signs_are_one_tap_away(visit: Visit) -> None:
+    watched = visit(window="phone")
     page = watched.page
     page.get_by_role("button", name="Emergency signs").click()
     panel = page.locator('[data-testid="stPopoverBody"]')
     panel.wait_for()
     assert "Blue lips" in panel.inner_text()
     assert overflow(page) == []
-    page.context.close()
+
+
+HOSTILE = '<img src="http://leaves.invalid/a.png"> ![x](http://leaves.invalid/b.png) **bold** `c`'
+
+
+def test_stored_text_stays_text(visit: Visit, address: str, store_file: Path) -> None:
+    """A name that is markup in HTML and in Markdown is shown as typed and asks for nothing."""
+    store = Store.open(store_file)
+    driver = sorted(store.all(Driver), key=lambda each: each.name)[0]
+    store.change(replace(driver, name=HOSTILE), by="coach")
+    try:
+        watched = visit()
+        for stem in PAGES:
+            watched.page.goto(f"{address}/{path_of(stem)}")
+            settled(watched.page)
+            assert watched.page.locator('[src*="leaves.invalid"], [href*="leaves.invalid"]').count() == 0
+            if stem in ("this_morning", "readings"):
+                assert HOSTILE in watched.page.inner_text("body")
+        assert watched.left == []
+    finally:
+        store.change(driver, by="coach")
+        store.close()
 
 
 def test_the_server_answers_on_this_machine_only(address: str) -> None:
