@@ -41,7 +41,7 @@ def straight_to(elevation_m: float, home_m: float = 0.0) -> ExposureHistory:
 
 @dataclass(frozen=True)
 class SimulatedDriver:
-    """True latent values: breathing in standard deviations, admixture's deviation and device bias [points]."""
+    """True latent values: breathing [standard deviations], admixture's deviation and device bias [points]."""
 
     breathing: float
     admixture: float

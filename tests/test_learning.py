@@ -1,4 +1,4 @@
-"""The driver's own range: covered as promised, calibrated, narrowed by readings, not dragged by a wild one."""
+"""The own range: covers as promised, is calibrated, narrowed by readings, not dragged by one wild one."""
 
 from __future__ import annotations
 

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from datetime import UTC, datetime
+from operator import attrgetter
 from typing import Any, Final, Literal
 
 import numpy as np
@@ -73,17 +74,15 @@ def own_ranges(
 
 def columns_of(readings: Sequence[Reading]) -> dict[str, NDArray[Any]]:
     """The fields that own ranges need as one array each, as the store hands them out."""
+    fields = zip(*map(attrgetter(*COLUMNS), readings), strict=True) if readings else ((),) * len(COLUMNS)
     columns: dict[str, NDArray[Any]] = {}
-    for name in COLUMNS:
-        values = [getattr(reading, name) for reading in readings]
+    for name, values in zip(COLUMNS, fields, strict=True):
         if name == "taken_at":
             columns[name] = np.array([_in_utc(v) for v in values], dtype="datetime64[us]")
-        elif name in PLAIN_TYPES:
-            columns[name] = np.array(values, dtype=PLAIN_TYPES[name])
         else:
-            column = np.empty(len(values), dtype=object)
-            column[:] = values
-            columns[name] = column
+            columns[name] = (
+                np.array(values, dtype=PLAIN_TYPES[name]) if name in PLAIN_TYPES else _objects(values)
+            )
     return columns
 
 
@@ -135,6 +134,13 @@ def own_range_in_words(person: PersonPosterior, pronoun: str = "the driver's") -
     return f"{number(person.readings)} {noun}, {above}: the range is about {share} {pronoun} own."
 
 
+def _objects(values: Sequence[Any]) -> NDArray[Any]:
+    """Values as they are: numpy would make a second dimension of tuples."""
+    column = np.empty(len(values), dtype=object)
+    column[:] = values
+    return column
+
+
 def _teaches(columns: Mapping[str, NDArray[Any]]) -> NDArray[np.bool_]:
     """The rules of `why_it_teaches_nothing` but sickness, on columns."""
     signs = columns["emergency_signs"]
@@ -166,4 +172,5 @@ def _covers(period: SickPeriod, reading: Reading) -> bool:
 
 def _in_utc(instant: datetime) -> datetime:
     """An instant without its zone, in UTC, as numpy keeps it."""
-    return instant.astimezone(UTC).replace(tzinfo=None)
+    utc = instant if instant.tzinfo is UTC else instant.astimezone(UTC)
+    return utc.replace(tzinfo=None)

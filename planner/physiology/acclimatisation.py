@@ -21,7 +21,7 @@ from planner.physiology.population import POPULATION, Population
 from planner.physiology.ventilation import _target
 
 HOURS_PER_DAY: Final = 24.0
-# Columns of one block: the states and one row of targets stay in the processor's cache.
+# Columns of one block: its states and targets stay in the processor's cache.
 BLOCK: Final = 4096
 
 
@@ -131,7 +131,7 @@ def evolve(
         (2, 1)
     """
     start = checked("ventilatory_state", ventilatory_state)
-    inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
+    inspired = np.asarray(inspired_po2_mmhg, dtype=np.float64)
     if inspired.ndim != 2 or start.shape != inspired.shape[1:]:
         raise InputError("inspired_po2_mmhg", inspired.shape, f"an array (steps, {start.size})")
     time = np.broadcast_to(checked("hours", hours), inspired.shape[:1])
@@ -140,10 +140,17 @@ def evolve(
     states = np.empty(inspired.shape)
     for first in range(0, start.size, BLOCK):
         columns = slice(first, first + BLOCK)
+        targets = _target(checked("inspired_po2_mmhg", inspired[:, columns]), POPULATION)
         state = start[columns].copy()
-        for step in range(len(inspired)):
-            gap = _target(inspired[step, columns], POPULATION) - state
-            state += np.where(gap > 0.0, rise[step], fall[step]) * gap
+        upwards = np.empty(state.shape)
+        for step, gap in enumerate(targets):
+            # gap x (rise where upwards, else fall), without a choice element by element.
+            gap -= state
+            np.maximum(gap, 0.0, out=upwards)
+            upwards *= rise[step] - fall[step]
+            gap *= fall[step]
+            gap += upwards
+            state += gap
             states[step, columns] = state
     return states
 

@@ -34,11 +34,12 @@ SAME_DAY_H: Final = 6.0
 PLANNING_PRESSURE_SD_HPA: Final = 2.0
 
 COARSE_BREATHING: Final = np.linspace(-3.6, 3.6, 13)
-FINE_BREATHING: Final = np.linspace(-3.6, 3.6, 73)
+FINE_BREATHING: Final = np.linspace(-3.6, 3.6, 81)
 REACH_SD: Final = 4.0  # of the offset's standard deviation
 COARSE_OFFSETS: Final = 21
 FINE_OFFSETS: Final = 201
 ADMIXTURE_NODES: Final = 61
+ROWS_PER_PRODUCT: Final = 9  # of FINE_BREATHING; see _product
 READINGS_PER_BLOCK: Final = 512  # a block's likelihoods stay in the processor's cache
 
 
@@ -133,16 +134,17 @@ def _grids(
     bias = offset[:, None] + admixture
     of_bias = np.exp(-0.5 * (bias / population.device_bias_sd_pct) ** 2)
     prior = np.exp(-0.5 * FINE_BREATHING[:, None] ** 2 - 0.5 * (admixture / population.admixture_sd_pct) ** 2)
-    summed_out = [likelihood @ of_bias for likelihood in likelihoods]
+    summed_out = [_product(likelihood, of_bias) for likelihood in likelihoods]
     person = _normalised(prior * np.prod(summed_out, axis=0) if summed_out else prior)
     devices: dict[str, FloatArray] = {}
     biases: dict[str, Estimate] = {}
     for device, name in enumerate(names):
         others = [s for i, s in enumerate(summed_out) if i != device]
         rest = prior * np.prod(others, axis=0) if others else prior
-        devices[str(name)] = _normalised(likelihoods[device] * (rest @ of_bias.T))
+        devices[str(name)] = _normalised(likelihoods[device] * _product(rest, of_bias.T))
         moments = [
-            float((likelihoods[device] * (rest @ (of_bias * bias**power).T)).sum()) for power in range(3)
+            float((likelihoods[device] * _product(rest, (of_bias * bias**power).T)).sum())
+            for power in range(3)
         ]
         mean, square = moments[1] / moments[0], moments[2] / moments[0]
         biases[str(name)] = Estimate(mean, float(np.sqrt(max(square - mean**2, 0.0))))
@@ -200,6 +202,15 @@ def _log_likelihood(
             np.log(density, out=density)
             total[node] += density @ weight[block]
     return total
+
+
+def _product(left: FloatArray, right: FloatArray) -> FloatArray:
+    """Matrix product in slices so small that the linear algebra library starts no threads for them.
+
+    Threads gain nothing at this size, and on a busy machine their waiting made it many times slower.
+    """
+    slices = left.reshape(-1, ROWS_PER_PRODUCT, left.shape[1])
+    return np.asarray(slices @ right).reshape(left.shape[0], right.shape[1])
 
 
 def _cubic(coarse: FloatArray, fine: FloatArray) -> FloatArray:

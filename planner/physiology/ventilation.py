@@ -164,10 +164,14 @@ def _is_asleep(wakefulness: str) -> bool:
 
 
 def _target(inspired: FloatArray, population: Population) -> FloatArray:
-    missing = np.maximum(REFERENCE_INSPIRED_PO2_MMHG - inspired, 0.0)
-    # PaCO2 over sea level's is 1 - fall; ventilation goes with its inverse.
-    fall = np.minimum(population.paco2_fall_per_mmhg * missing, LARGEST_PACO2_FALL)
-    return np.asarray(fall / (1.0 - fall))
+    # PaCO2 over sea level's is `left`; ventilation goes with its inverse.
+    left = np.asarray(inspired - REFERENCE_INSPIRED_PO2_MMHG)
+    left *= population.paco2_fall_per_mmhg
+    left += 1.0
+    np.clip(left, 1.0 - LARGEST_PACO2_FALL, 1.0, out=left)
+    np.divide(1.0, left, out=left)
+    left -= 1.0
+    return left
 
 
 def _share(inspired: FloatArray, population: Population) -> FloatArray:
