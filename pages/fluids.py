@@ -17,7 +17,7 @@ from planner.ui.fluids_words import at_most, ends
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.wording import counted
 
-PARTS = ("Plan", "Weigh", "Taught", "Day")
+PARTS = ("Plan", "Weigh", "Learned", "Day")
 
 
 def say_what_to_drink(ctx: Context, drinks: SessionDrinks) -> None:
@@ -49,7 +49,7 @@ def draw_parts(ctx: Context, sessions: list[SessionAt], first: SessionAt, drinks
     with plain_errors(), st.container(key=f"p-fluids-{part.lower()}"):
         if part == "Weigh":
             draw_weigh(ctx)
-        elif part == "Taught":
+        elif part == "Learned":
             draw_taught(ctx, drinks)
         elif part == "Day":
             draw_day(ctx)

@@ -26,6 +26,7 @@ FLUIDS_STYLE: Final = """
 .p-step::before{content:"";position:absolute;top:-6px;left:0;width:2px;height:10px;background:var(--course-line)}
 .p-step.p-car{background:var(--surface);padding-left:.6rem;border-left:1px solid var(--rule);
  border-right:1px solid var(--rule)}
+.p-step.p-car+.p-step{padding-left:.6rem}
 .p-when{font-weight:600;font-size:.9375rem}
 .p-amount{font-size:1.125rem;font-weight:600;line-height:1.3}
 .p-bottles{display:flex;gap:.35rem;align-items:flex-end;height:4rem;padding-bottom:.35rem}
@@ -39,8 +40,8 @@ FLUIDS_STYLE: Final = """
 @media (max-width:640px){
  .p-course{grid-template-columns:minmax(0,1fr)!important;border-top:0;
   border-left:2px solid var(--course-line)}
- .p-step,.p-step.p-car{display:grid;grid-template-columns:minmax(0,1fr) auto;column-gap:.75rem;
-  padding:.4rem 0 .4rem .75rem;border-left:0;border-right:0}
+ .p-step,.p-step.p-car,.p-step.p-car+.p-step{display:grid;grid-template-columns:minmax(0,1fr) auto;
+  column-gap:.75rem;padding:.4rem 0 .4rem .75rem;border-left:0;border-right:0}
  .p-step::before{top:.9rem;left:-6px;width:10px;height:2px}
  .p-step .p-bottles{grid-column:2;grid-row:1/span 4;height:auto;align-self:center;padding:.5rem 0 0}
 }
@@ -96,9 +97,9 @@ def sweat_chart(weighed: pd.DataFrame, unit: str, mode: Mode = "screen") -> Any:
     `taught` (bool).
     """
     order = list(dict.fromkeys(weighed["at"]))
-    x = alt.X("at:N", sort=order, title=None, axis=alt.Axis(labelAngle=-40, labelLimit=140))
+    x = alt.X("at:N", sort=order, title=None, axis=alt.Axis(labelAngle=-40, labelLimit=160, grid=False))
     top = float(max(weighed["high"].max(), weighed["predicted"].fillna(0.0).max())) * 1.05
-    scale = alt.Scale(domain=[min(0.0, float(weighed["low"].min())), top])
+    scale = alt.Scale(domain=[min(0.0, float(weighed["low"].min())), top], nice=True)
     base = alt.Chart(weighed).encode(x=x, tooltip=[alt.Tooltip("words:N", title="weighing")])
     error = base.mark_rule(color=colour("own_range_line", mode), strokeWidth=2).encode(
         y=alt.Y("low:Q", scale=scale, title=f"sweat, {unit}"), y2="high:Q"

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
-from planner.commands import air, backup, check, demo, morning, read
+from planner.commands import air, backup, check, demo, drink, morning, read, sweat
 from planner.commands.command import Command
 
 COMMANDS: tuple[Command, ...] = (
     air.COMMAND,
     morning.COMMAND,
+    sweat.COMMAND,
+    drink.COMMAND,
     read.COMMAND,
     demo.COMMAND,
     backup.COMMAND,

@@ -31,6 +31,7 @@ from planner.wording import METRIC, UnitChoice
 
 NEXT_COUNTS_WITHIN: Final = timedelta(hours=48)  # a later session is no reason to hurry (judgement)
 MOST_STINTS: Final = 24
+SESSIONS_NAMED: Final = 6
 RESIDENT_SINCE: Final = timedelta(days=365)
 
 
@@ -128,8 +129,10 @@ def find_session(calendar: Calendar, text: str, at: datetime) -> SessionAt:
             if upcoming and s.round.id == upcoming.round.id and s.session.name.casefold() == wanted
         ]
     if not matching:
-        names = ", ".join(f"{s.round.name}/{s.session.name}" for s in sessions if s.session.ends_at > at)
-        raise NotFoundError(f"session {text!r} is not known; still to come: {names or 'none'}")
+        names = [f"{s.round.name}/{s.session.name}" for s in sessions if s.session.ends_at > at][
+            :SESSIONS_NAMED
+        ]
+        raise NotFoundError(f"session {text!r} is not known; next to come: {', '.join(names) or 'none'}")
     return matching[0]
 
 

@@ -8,7 +8,7 @@ from datetime import datetime, timedelta
 from typing import Final
 
 from planner.errors import InputError
-from planner.hydration.model import Weighing, WeighingClothes
+from planner.hydration.model import CockpitConditions, Weighing, WeighingClothes
 from planner.hydration.weighings import SHORTEST, check_weighing
 from planner.season.model import Driver
 from planner.services.cockpit import conditions_of, worn_ensemble
@@ -55,6 +55,10 @@ class TypedWeighOut:
     food_g: float | None = None
     clothes: WeighingClothes = "towelled skin"
     minutes: float | None = None  # between the two weighings
+    air_temperature_c: float | None = (
+        None  # in the cockpit, with the humidity; None = as noted for the session
+    )
+    humidity_pct: float | None = None
 
 
 def session_near(calendar: Calendar, at: datetime) -> SessionAt | None:
@@ -113,9 +117,7 @@ def weigh_out(
     if typed.drink_ml is None:
         raise InputError("drunk", "nothing typed", "what was drunk, 0 if nothing")
     minutes = likely_minutes(opened, now) if typed.minutes is None else typed.minutes
-    session_id = opened.weighing.session_id
-    noted = conditions_of(store, session_id) if session_id else None
-    measured = noted if noted is not None and noted.measured else None
+    measured = measured_conditions(store, opened)
     finished = replace(
         opened.weighing,
         ends_at=opened.weighing.starts_at + timedelta(minutes=minutes),
@@ -124,15 +126,22 @@ def weigh_out(
         urine_ml=typed.urine_ml or 0.0,
         food_g=typed.food_g or 0.0,
         clothes=typed.clothes,
-        air_temperature_c=measured.air_temperature_c if measured else None,
         radiant_temperature_c=measured.radiant_temperature_c if measured else None,
-        humidity_pct=measured.humidity_pct if measured else None,
         air_speed_m_s=measured.air_speed_m_s if measured else None,
+        air_temperature_c=_first(typed.air_temperature_c, measured.air_temperature_c if measured else None),
+        humidity_pct=_first(typed.humidity_pct, measured.humidity_pct if measured else None),
     )
     _check(finished, opened.driver)
     with store.transaction(by, "weigh-out") as change_set_id:
         kept = store.change(finished, by=by)
     return kept, change_set_id
+
+
+def measured_conditions(store: Store, opened: OpenWeighing) -> CockpitConditions | None:
+    """The cockpit as measured for the weighing's session; an estimate is not taken for a measurement."""
+    session_id = opened.weighing.session_id
+    noted = conditions_of(store, session_id) if session_id else None
+    return noted if noted is not None and noted.measured else None
 
 
 def open_weighings(store: Store, calendar: Calendar, now: datetime) -> list[OpenWeighing]:
@@ -171,6 +180,10 @@ def _driver(calendar: Calendar, driver_id: int | None) -> Driver:
     if driver is None:
         raise InputError("driver", "nothing chosen", "one of the team")
     return driver
+
+
+def _first(typed: float | None, noted: float | None) -> float | None:
+    return noted if typed is None else typed
 
 
 def _check(weighing: Weighing, driver: Driver) -> None:

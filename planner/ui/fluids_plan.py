@@ -14,7 +14,7 @@ from planner.season.model import Driver
 from planner.services.fluids import MOST_STINTS, PlannedDriver, SessionAt, SessionDrinks
 from planner.ui.fluids_cached import drinks_for
 from planner.ui.fluids_cockpit import draw_clothing, draw_conditions
-from planner.ui.fluids_words import at_most, change_range, ends, rate, rate_range, volume_range
+from planner.ui.fluids_words import at_most, bottles, change_range, ends, rate, rate_range, volume_range
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context
 from planner.ui.tables import note, table
@@ -160,7 +160,7 @@ def _needed(step: TimelineStep, ctx: Context) -> str:
 
 def _in_car(row: PlannedDriver, ctx: Context) -> str:
     _, best, _ = ends(row.plan.in_car_ml)
-    return f"{at_most(best, ctx.units)} = {number(best / row.driver.bottle_ml, 1)} bottles"
+    return f"{at_most(best, ctx.units)}, {bottles(best / row.driver.bottle_ml)}"
 
 
 def _sodium(row: PlannedDriver) -> str:

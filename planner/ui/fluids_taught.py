@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from zoneinfo import ZoneInfo
+
 import pandas as pd
 import streamlit as st
 
@@ -13,12 +16,12 @@ from planner.services.fluids import SessionDrinks, Taught, taught_of
 from planner.ui.cached import calendar_of
 from planner.ui.fluids_cached import weighed_by
 from planner.ui.fluids_plan import choose_driver
-from planner.ui.fluids_words import rate, rate_range, rate_unit, weighed_words
+from planner.ui.fluids_words import rate, rate_range, rate_unit, signed_pct, weighed_words
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import note, table
 from planner.ui.text import escaped
 from planner.units import from_house
-from planner.wording import DASH, day, day_and_clock, number, per_cent, volume
+from planner.wording import DASH, day_and_clock, number, per_cent, volume
 
 SHOWN = 12
 
@@ -49,7 +52,7 @@ def _draw_everybody(ctx: Context, taught: tuple[Taught, ...], drinks: SessionDri
                 str(len(each.weighed)),
                 rate(last.sweat_l_per_h, ctx.units) if last else DASH,
                 volume(last.weighing.drink_ml, ctx.units) if last else DASH,
-                f"{number(last.mass_change_pct, 1)} %" if last else DASH,
+                signed_pct(last.mass_change_pct) if last else DASH,
                 number(float(plan.ratio), 2),
                 per_cent(100.0 * float(plan.own_share)),
                 rate_range(plan.sweat_rate_l_per_h, ctx.units),
@@ -107,15 +110,23 @@ def _draw_removal(ctx: Context, shown: tuple[Weighed, ...], zones: dict[int, str
         st.rerun()
 
 
+def _label(weighed: Weighed, zone: str, names: Mapping[int, str]) -> str:
+    """As "5 Jun, Practice 1"; the time where no session is known."""
+    local = weighed.weighing.starts_at.astimezone(ZoneInfo(zone))
+    what = names.get(weighed.weighing.session_id or 0, f"{local:%H:%M}")
+    return f"{local.day} {local:%b}, {what}"
+
+
 def _frame(ctx: Context, shown: tuple[Weighed, ...], zones: dict[int, str]) -> pd.DataFrame:
+    names = {s.id: s.name for each in calendar_of(ctx).sessions.values() for s in each}
+
     def in_unit(litres: float) -> float:
         return litres if ctx.units.volume == "mL" else from_house("volume", litres * 1000.0, ctx.units.volume)
 
     return pd.DataFrame(
         [
             {
-                "at": f"{day(w.weighing.starts_at, zones[w.weighing.id])} "
-                f"{day_and_clock(w.weighing.starts_at, zones[w.weighing.id])[-5:]}",
+                "at": _label(w, zones[w.weighing.id], names),
                 "rate": in_unit(w.sweat_l_per_h),
                 "low": in_unit(w.sweat_l_per_h - RANGE_SD * w.error_l_per_h),
                 "high": in_unit(w.sweat_l_per_h + RANGE_SD * w.error_l_per_h),

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Final, get_args
+from typing import Final, NamedTuple, get_args
 
 import streamlit as st
 
@@ -14,6 +14,7 @@ from planner.services.weighing_entry import (
     OpenWeighing,
     TypedWeighOut,
     likely_minutes,
+    measured_conditions,
     not_weighed_in,
     open_weighings,
     session_near,
@@ -28,10 +29,24 @@ from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import note
 from planner.ui.text import escaped, literal
+from planner.units import from_house
 from planner.wording import clock, mass, unit_name, volume
 
 _ROUND: Final = "weighing round"  # moves with every weighing kept, so that the next form begins empty
 _LAST: Final = "weighing kept last"
+
+
+class _OutFields(NamedTuple):
+    """The weigh-out's fields as typed, in the reader's units."""
+
+    after: float | None
+    drink: float | None
+    minutes: float | None
+    urine: float | None
+    food: float | None
+    clothes: str
+    air: float | None
+    humidity: float | None
 
 
 def draw_weigh(ctx: Context) -> None:
@@ -110,16 +125,14 @@ def _draw_out(ctx: Context) -> None:
     if not pressed:
         return
     try:
-        kept = weigh_out(ctx.store, opened, _in_house_units(ctx, *typed), by=ctx.who, now=ctx.now)
+        kept = weigh_out(ctx.store, opened, _in_house_units(ctx, typed), by=ctx.who, now=ctx.now)
     except PlannerError as problem:
         show_error(problem)
         return
     _kept(kept)
 
 
-def _out_fields(
-    ctx: Context, opened: OpenWeighing, key: str
-) -> tuple[float | None, float | None, float | None, float | None, str, float | None]:
+def _out_fields(ctx: Context, opened: OpenWeighing, key: str) -> _OutFields:
     left, right = st.columns(2, wrap=False)
     with left:
         after = _mass_input(ctx, "Mass after", f"out_mass_{key}")
@@ -138,39 +151,64 @@ def _out_fields(
         format="%.0f",
         key=f"out_minutes_{key}",
     )
-    with st.expander("Urine, food, clothes"):
-        urine = st.number_input(
-            f"Urine, {unit_name(ctx.units.volume)}", value=0.0, step=50.0, format="%g", key=f"out_urine_{key}"
-        )
-        food = st.number_input("Eaten, g", value=0.0, step=10.0, format="%g", key=f"out_food_{key}")
-        clothes = st.segmented_control(
-            "Weighed in",
-            list(get_args(WeighingClothes)),
-            default="towelled skin",
-            required=True,
-            key=f"out_clothes_{key}",
-        )
-    return after, drink, urine, food, clothes, minutes
+    with st.expander("Urine, food, clothes, cockpit"):
+        return _OutFields(after, drink, minutes, *_more_out_fields(ctx, opened, key))
 
 
-def _in_house_units(
-    ctx: Context,
-    after: float | None,
-    drink: float | None,
-    urine: float | None,
-    food: float | None,
-    clothes: str,
-    minutes: float | None,
-) -> TypedWeighOut:
+def _more_out_fields(
+    ctx: Context, opened: OpenWeighing, key: str
+) -> tuple[float | None, float | None, str, float | None, float | None]:
+    measured = measured_conditions(ctx.store, opened)
+    degrees = ctx.units.temperature
+    left, right = st.columns(2, wrap=False)
+    urine = left.number_input(
+        f"Urine, {unit_name(ctx.units.volume)}", value=0.0, step=50.0, format="%g", key=f"out_urine_{key}"
+    )
+    food = right.number_input("Eaten, g", value=0.0, step=10.0, format="%g", key=f"out_food_{key}")
+    clothes = st.segmented_control(
+        "Weighed in",
+        list(get_args(WeighingClothes)),
+        default="towelled skin",
+        required=True,
+        key=f"out_clothes_{key}",
+    )
+    left, right = st.columns(2, wrap=False)
+    air = left.number_input(
+        f"Cockpit air, {unit_name(degrees)}",
+        value=from_house("temperature", measured.air_temperature_c, degrees) if measured else None,
+        step=1.0,
+        format="%.1f",
+        key=f"out_air_{key}",
+    )
+    humidity = right.number_input(
+        "Cockpit humidity, %",
+        value=measured.humidity_pct if measured else None,
+        step=1.0,
+        format="%.0f",
+        key=f"out_humidity_{key}",
+    )
+    note("Without the cockpit's air and humidity the weighing says how much was lost, but teaches no ratio.")
+    return urine, food, clothes, air, humidity
+
+
+def _in_house_units(ctx: Context, typed: _OutFields) -> TypedWeighOut:
     worn: dict[str, WeighingClothes] = {each: each for each in get_args(WeighingClothes)}
-    unit = ctx.units.volume
+    volumes, degrees = ctx.units.volume, ctx.units.temperature
+
+    def millilitres(field: str, value: float | None, quantity: str) -> float | None:
+        return None if value is None else typed_value(field, value, quantity, "volume", volumes)
+
     return TypedWeighOut(
-        mass_after_kg=_mass(ctx, "mass after", after),
-        drink_ml=None if drink is None else typed_value("drunk", drink, "drink_ml", "volume", unit),
-        urine_ml=None if urine is None else typed_value("urine", urine, "urine_ml", "volume", unit),
-        food_g=food,
-        clothes=worn[clothes],
-        minutes=minutes,
+        mass_after_kg=_mass(ctx, "mass after", typed.after),
+        drink_ml=millilitres("drunk", typed.drink, "drink_ml"),
+        urine_ml=millilitres("urine", typed.urine, "urine_ml"),
+        food_g=typed.food,
+        clothes=worn[typed.clothes],
+        minutes=typed.minutes,
+        air_temperature_c=None
+        if typed.air is None
+        else typed_value("cockpit air", typed.air, "air_temperature_c", "temperature", degrees),
+        humidity_pct=typed.humidity,
     )
 
 

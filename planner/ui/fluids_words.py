@@ -61,14 +61,25 @@ def change_range(given: Range) -> str:
     return f"{number(low, 1)} to {per_cent(high, 1)}"
 
 
+def signed_pct(value: float) -> str:
+    """A change in per cent with its sign, one decimal: "+0.3 %"."""
+    return f"{'+' if value >= 0.05 else ''}{per_cent(value, 1)}"
+
+
+def bottles(amount: float) -> str:
+    """So many bottles: "0.8 bottle", "1.5 bottles"."""
+    return f"{number(amount, 1)} bottle{'s' if round(amount, 1) > 1.0 else ''}"
+
+
 def weighed_words(weighed: Weighed, zone: str, units: UnitChoice) -> str:
     """A finished weighing on one line."""
     error = rate(RANGE_SD * weighed.error_l_per_h, units)
     sweat = rate(weighed.sweat_l_per_h, units).removesuffix(rate_unit(units)).rstrip()
+    predicted = weighed.predicted_l_per_h
+    beside = f", predicted {rate(predicted, units)}" if math.isfinite(predicted) else ""
     return (
-        f"{day_and_clock(weighed.weighing.starts_at, zone)}: sweat {sweat} ± {error}, "
-        f"predicted {rate(weighed.predicted_l_per_h, units)}; "
-        f"drank {volume(weighed.weighing.drink_ml, units)}, mass {number(weighed.mass_change_pct, 1)} %"
+        f"{day_and_clock(weighed.weighing.starts_at, zone)}: sweat {sweat} ± {error}{beside}; "
+        f"drank {volume(weighed.weighing.drink_ml, units)}, mass {signed_pct(weighed.mass_change_pct)}"
     )
 
 
