@@ -123,7 +123,7 @@ def test_scalar_array_shape_and_nan(formula) -> None:
     ("call", "message"),
     [
         (lambda: saturation_pct(-1.0), r"po2_mmhg: -1\.0 .* 0 to 760 mmHg "),
-        (lambda: saturation_pct(60.0, 74.0), r"ph: 74\.0 .* 6\.8 to 7\.9 1 "),
+        (lambda: saturation_pct(60.0, 74.0), r"ph: 74\.0 .* 6\.8 to 7\.9 "),
         (lambda: saturation_pct(60.0, 7.4, 98.6), r"body_temperature_c: 98\.6 .* 30 to 43 C "),
         (lambda: po2_mmhg(950.0), r"saturation_pct: 950\.0 .* 0 to 100 % "),
         (lambda: po2_mmhg(np.array([90.0, 100.0])), r"saturation_pct: 100\.0 .* below 100 %"),
