@@ -56,9 +56,9 @@ def _refused(refused: tuple[RefusedLineError, ...]) -> None:
     if not refused:
         return
     table(
-        ("Line", "Column", "Value", "What was wanted"),
+        ("Where", "Column", "Value", "What was wanted"),
         [
-            (str(r.line), r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
+            (f"Line {r.line}", r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
             for r in refused
         ],
         caption="Refused lines; put them right in the file and import it again",

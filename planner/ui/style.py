@@ -11,7 +11,8 @@ from planner.ui.tables import TABLE_STYLE
 _PAGE: Final = """
 .stMainBlockContainer{max-width:72rem;padding-left:1.25rem;padding-right:1.25rem}
 .stApp{font-variant-numeric:tabular-nums lining-nums}
-.stApp [data-testid="stHtml"]{overflow-wrap:anywhere}
+.stApp [data-testid="stHtml"]{overflow-wrap:break-word;overflow-x:auto}
+.p-row,.p-answer,.p-line,.p-kept{overflow-wrap:anywhere}
 button[data-testid^="stBaseButton-primary"],
 button[data-testid^="stBaseButton-primary"] *{color:var(--on-accent)}
 button[data-testid="stBaseButton-tertiary"],
