@@ -110,11 +110,11 @@ def show_chart(ctx: Context, view: DriverView, window: Window) -> int | None:
         frame(ground, "at", "elevation"),
         frame(rounds, "at", "elevation", "label"),
         frame(readings, "at", "spo2", "outcome", "kind", "reading", "words"),
-        ctx.now,
+        frame([(ctx.now, "today")], "at", "label"),
         unit,
     )
-    event: Any = st.altair_chart(
-        chart,
+    event: Any = st.vega_lite_chart(
+        spec=chart,
         theme=None,
         width="stretch",
         on_select="rerun",
@@ -132,7 +132,8 @@ def mark_row(view: DriverView, mark: JudgedMark) -> tuple[object, ...]:
     reading = mark.reading
     kind = "left out" if reading.left_out else reading.wakefulness
     zone = view.calendar.places[reading.place_id].zone
-    words = f"{day_and_clock(reading.taken_at, zone)}: {mark.judgement.outcome}. {mark.judgement.reasons[0]}"
+    # Short: on a telephone a long hint would leave the screen.
+    words = f"{day_and_clock(reading.taken_at, zone)}: {per_cent(reading.spo2_pct)}, {mark.judgement.outcome}"
     return (reading.taken_at, reading.spo2_pct, mark.judgement.outcome, kind, reading.id, words)
 
 

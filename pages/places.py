@@ -27,6 +27,7 @@ from planner.wording import (
     zone_name,
 )
 
+HALF_DAYS = tuple(half / 2 for half in range(29))
 QFF_WARNING = (
     "Type the pressure that a barometer at the track shows (station pressure), or the altimeter setting "
     "(QNH) of an aerodrome nearby. A sea-level pressure from a weather map or a telephone (QFF) was reduced "
@@ -125,7 +126,7 @@ def show_days(ctx: Context, air: venues.VenueAir) -> None:
         right=(1, 2, 3),
         caption=f"Somebody straight from sea level, living at {elevation(air.beds.elevation_m, ctx.units)}",
     )
-    course = venues.days_there(air.beds, [half / 2 for half in range(29)])
+    course = venues.days_there(air.beds, HALF_DAYS)
     frame = pd.DataFrame(
         {
             "days": [each.days for each in course],
@@ -135,8 +136,8 @@ def show_days(ctx: Context, air: venues.VenueAir) -> None:
             "range": [per_cent_range(each.low_pct, each.high_pct) for each in course],
         }
     )
-    st.altair_chart(
-        first_days_chart(frame),
+    st.vega_lite_chart(
+        spec=first_days_chart(frame),
         theme=None,
         width="stretch",
         alt=f"Expected SpO2 over two weeks there: {rows[0][1]} on arrival, {rows[-1][1]} on day 14",

@@ -14,10 +14,9 @@ from planner.services.season import (
     Calendar,
     RoundCost,
     Whereabouts,
-    round_costs,
     whereabouts,
 )
-from planner.ui.cached import calendar_of
+from planner.ui.cached import calendar_of, costs_of
 from planner.ui.frames import frame
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.tables import note, table
@@ -60,7 +59,7 @@ def show_season(ctx: Context, calendar: Calendar) -> None:
         driver = drivers[chosen]
     show_landscape(ctx, calendar, driver)
     if driver is not None:
-        show_high_rounds(ctx, calendar, driver)
+        show_high_rounds(ctx, driver)
     show_whereabouts(ctx, calendar)
 
 
@@ -101,13 +100,13 @@ def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> N
         for each in calendar.commitments
         if driver is not None and each.driver_id == driver.id
     ]
-    st.altair_chart(
-        season_chart(
+    st.vega_lite_chart(
+        spec=season_chart(
             frame(ground, "at", "elevation"),
             frame(rounds, "at", "elevation", "top", "label", "high"),
             frame(course, "at", "elevation", "where"),
             frame(ticks, "at", "label"),
-            ctx.now,
+            frame([(ctx.now, "today")], "at", "label"),
             unit,
         ),
         theme=None,
@@ -132,9 +131,9 @@ def course_of(calendar: Calendar, driver: Driver | None) -> list[tuple[datetime,
     return points
 
 
-def show_high_rounds(ctx: Context, calendar: Calendar, driver: Driver) -> None:
+def show_high_rounds(ctx: Context, driver: Driver) -> None:
     """Draw what the present plan gives this driver at the high rounds."""
-    costs = round_costs(calendar, driver)
+    costs = costs_of(ctx, driver)
     if not costs:
         return
     table(
@@ -157,8 +156,9 @@ def show_high_rounds(ctx: Context, calendar: Calendar, driver: Driver) -> None:
     if unplanned:
         line(f"A dash: no stay is planned there yet ({', '.join(unplanned)}).")
     note(
-        "SpO2 awake at rest, the range of 95 % of single readings. Free days lie between the last fixed "
-        "thing before (a round or a commitment) and the first session; nights there are those before it. "
+        "SpO2 awake at rest: the driver's own range, which holds 95 % of single readings. Free days lie "
+        "between the last fixed thing before (a round or a commitment) and the first session; nights there "
+        "are those before it. "
         "Aerobic capacity on race morning is per cent of one's own at sea level and no measure of lap time. "
         f"A round is called high from {elevation(HIGH_FROM_M, ctx.units)} (judgement)."
     )

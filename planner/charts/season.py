@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from datetime import datetime
+from functools import lru_cache
 from typing import Any, Final
 
 import altair as alt
 import pandas as pd
 
+from planner.charts.spec import as_text, named, with_data
 from planner.charts.theme import Mode, colour, dressed
 
 HEIGHT: Final = 440
@@ -23,20 +24,32 @@ def season_chart(
     rounds: pd.DataFrame,
     course: pd.DataFrame,
     commitments: pd.DataFrame,
-    today: datetime,
+    today: pd.DataFrame,
     unit: str,
     mode: Mode = "screen",
-) -> Any:
+) -> dict[str, Any]:
     """Draw the season's elevation over time.
 
     Parameters: all instants are UTC, all elevations in `unit`. `ground` has `at`, `elevation`; `rounds` has
     `at`, `elevation`, `top` (from where its name stands), `label` (name and date), `high` (bool); `course`
-    has `at`, `elevation`, `where`; `commitments` has `at`, `label`.
+    has `at`, `elevation`, `where`; `commitments` has `at`, `label`; `today` has `at`, `label`.
     """
-    highest = float(max(ground["elevation"].max(), course["elevation"].max() if len(course) else 0.0))
-    lowest = min(0.0, float(ground["elevation"].min()))
+    heights = pd.concat([ground["elevation"], course["elevation"].astype(float), rounds["top"]])
+    structure = _structure(float(heights.min()), float(heights.max()), unit, mode)
+    return with_data(
+        structure,
+        ground=ground,
+        rounds=rounds.assign(apart=names_apart(rounds)),
+        course=course,
+        commitments=commitments,
+        today=today,
+    )
+
+
+@lru_cache(maxsize=64)
+def _structure(lowest: float, highest: float, unit: str, mode: Mode) -> str:
+    lowest = min(0.0, lowest)
     top = lowest + (highest - lowest) / (1.0 - ROOM_FOR_NAMES)
-    scale = alt.Scale(domain=[lowest, max(top, lowest + 100.0)], nice=False)
     x = alt.X(
         "at:T",
         title=None,
@@ -46,45 +59,40 @@ def season_chart(
     y = alt.Y(
         "elevation:Q",
         title=f"elevation, {unit}",
-        scale=scale,
+        scale=alt.Scale(domain=[lowest, max(top, lowest + 100.0)], nice=False),
         axis=alt.Axis(
             values=elevation_steps(highest, 6),
             labelExpr="replace(format(datum.value, ','), ',', '\\u2009')",
         ),
     )
     land = (
-        alt.Chart(ground)
+        named("ground")
         .mark_area(
-            color=colour("course", mode),
-            line={"color": colour("course_line", mode), "strokeWidth": 1.5},
+            color=colour("course", mode), line={"color": colour("course_line", mode), "strokeWidth": 1.5}
         )
         .encode(x=x, y=y)
     )
-    layers = [land]
-    if len(course):
-        layers.append(
-            alt.Chart(course)
-            .mark_line(color=colour("text", mode), strokeWidth=1.5)
-            .encode(x=x, y=y, order="at:T", tooltip=[alt.Tooltip("where:N", title="the driver")])
+    course = (
+        named("course")
+        .mark_line(color=colour("text", mode), strokeWidth=1.5)
+        .encode(x=x, y=y, order="at:T", tooltip=[alt.Tooltip("where:N", title="the driver")])
+    )
+    ticks = (
+        named("commitments")
+        .mark_tick(color=colour("population_line", mode), thickness=2, size=10)
+        .encode(
+            x=x,
+            y=alt.value(alt.expr("height - 5")),
+            tooltip=[alt.Tooltip("label:N", title="commitment")],
         )
-    if len(commitments):
-        layers.append(
-            alt.Chart(commitments)
-            .mark_tick(color=colour("population_line", mode), thickness=2, size=10)
-            .encode(
-                x=x,
-                y=alt.value(alt.expr("height - 5")),
-                tooltip=[alt.Tooltip("label:N", title="commitment")],
-            )
-        )
-    layers += _today(today, x, mode)
-    layers += _signposts(rounds, x, y, mode)
-    return dressed(alt.layer(*layers).properties(height=HEIGHT, width="container"), mode)
+    )
+    chart = alt.layer(land, course, ticks, *_today(x, mode), *_signposts(x, y, mode))
+    return as_text(dressed(chart.properties(height=HEIGHT, width="container"), mode))
 
 
-def _today(today: datetime, x: alt.X, mode: Mode) -> list[Any]:
+def _today(x: alt.X, mode: Mode) -> list[Any]:
     """A hairline with its word at the top."""
-    base = alt.Chart(pd.DataFrame({"at": [today], "label": ["today"]})).encode(x=x)
+    base = named("today").encode(x=x)
     return [
         base.mark_rule(color=colour("refer", mode), strokeWidth=1),
         base.mark_text(align="left", baseline="top", dx=4, color=colour("muted", mode)).encode(
@@ -93,11 +101,9 @@ def _today(today: datetime, x: alt.X, mode: Mode) -> list[Any]:
     ]
 
 
-def _signposts(rounds: pd.DataFrame, x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
+def _signposts(x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     """Each round as a point on the ground with its name standing on it."""
-    base = alt.Chart(rounds.assign(apart=names_apart(rounds))).encode(
-        x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")]
-    )
+    base = named("rounds").encode(x=x, y=y, tooltip=[alt.Tooltip("label:N", title="round")])
     high = base.transform_filter(f"datum.high && (width >= {NARROW_PX} || datum.apart)")
     low = base.transform_filter(f"!datum.high && width >= {NARROW_PX}")
     name: dict[str, Any] = {"y": alt.Y("top:Q"), "text": alt.Text("label:N")}

@@ -119,13 +119,15 @@ class DriverView:
         population = self.population.expected(instants)
         return [BandPoint(*each) for each in zip(instants, own, population, strict=True)]
 
+    @cached_property
+    def costs(self) -> list[RoundCost]:
+        """What the present plan gives at the high rounds, by what is known of the driver now."""
+        return round_costs(self.calendar, self.driver, self.person)
+
+    @cached_property
     def next_high_round(self) -> tuple[RoundCost, RoundCost] | None:
         """The next high round by what is known of the driver now, and by the population alone."""
-        pairs = zip(
-            round_costs(self.calendar, self.driver, self.person),
-            round_costs(self.calendar, self.driver),
-            strict=True,
-        )
+        pairs = zip(self.costs, round_costs(self.calendar, self.driver), strict=True)
         return next((pair for pair in pairs if pair[0].first_session.starts_at > self.now), None)
 
     def explanation(self, reading_id: int) -> Explanation:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from functools import lru_cache
 from math import nan
 from typing import Final, Literal, TypeAlias
 
@@ -77,7 +78,8 @@ def venue_air(place: Place, measured_pressure_hpa: float = nan) -> VenueAir:
     return VenueAir(place, track, beds)
 
 
-def days_there(air: SiteAir, days: Sequence[float] = DAYS_SHOWN) -> list[DayThere]:
+@lru_cache(maxsize=256)
+def days_there(air: SiteAir, days: tuple[float, ...] = DAYS_SHOWN) -> list[DayThere]:
     """Return what to expect at an elevation by days there, living and resting at that elevation."""
     at = np.asarray(days, dtype=np.float64)
     expected, capacity = straight_from_sea_level(air, at), capacity_there(air, at)

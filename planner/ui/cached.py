@@ -12,7 +12,7 @@ import streamlit as st
 from planner.season.model import Driver
 from planner.services.driver import BandPoint, DriverView, Window, driver_view
 from planner.services.morning import ThisMorning, this_morning
-from planner.services.season import Calendar, read_calendar
+from planner.services.season import Calendar, RoundCost, read_calendar
 from planner.store.store import Store
 from planner.ui.page import Context
 
@@ -37,6 +37,12 @@ def driver_view_of(context: Context, driver: Driver) -> DriverView:
     return _driver_view(
         store.uid, str(store.path), store.version(), driver.id, hour, store, driver, context.now
     )
+
+
+def costs_of(context: Context, driver: Driver) -> list[RoundCost]:
+    """What the present plan gives a driver at the high rounds, by what the readings have taught."""
+    view = driver_view_of(context, driver)
+    return view.costs
 
 
 def band_of(context: Context, view: DriverView, window: Window) -> list[BandPoint]:

@@ -125,7 +125,7 @@ def draw_taught(view: DriverView) -> None:
 
 def draw_next_round(ctx: Context, view: DriverView) -> None:
     """The next high round as it would look for this driver."""
-    pair = view.next_high_round()
+    pair = view.next_high_round
     if pair is None:
         line("No high round ahead.")
         return
