@@ -45,6 +45,13 @@ class MorningWater:
     reasons: tuple[str, ...]
     advice: str
 
+    @property
+    def sentence(self) -> str:
+        """The reasons as one sentence, with what they add up to when they do."""
+        text = "; ".join(self.reasons)
+        verdict = f": too little water {self.likelihood}" if self.likelihood in LIKELIHOODS[2:] else ""
+        return f"{text[:1].upper()}{text[1:]}{verdict}."
+
 
 def baseline_kg(mark: MorningMark, earlier: Sequence[MorningMark]) -> float | None:
     """The driver's own morning mass before this mark: the median of the last four weeks, of three or more."""

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime, time, timedelta
 from math import nan
 from typing import Final, Literal, TypeAlias
 from zoneinfo import ZoneInfo
 
 from planner.errors import InputError
+from planner.hydration.morning import MorningWater
 from planner.monitoring.model import Notice, Outcome, Reading, SickPeriod
 from planner.monitoring.mornings import JudgedReading, Morning
 from planner.monitoring.outcome import (
@@ -26,6 +27,7 @@ from planner.monitoring.own_range import own_range_in_words
 from planner.season.model import Place
 from planner.services.air import SiteAir, site_air
 from planner.services.course import POSSESSIVES, DriverCourse, Whereabout
+from planner.services.morning_water import morning_fluid_findings
 from planner.services.own import Past
 from planner.services.places import pressure_in_force
 from planner.services.season import Calendar, read_calendar
@@ -116,6 +118,8 @@ def this_morning(store: Store, at: datetime) -> ThisMorning:
                 at,
             )
         )
+    water = morning_fluid_findings(store, at, calendar)
+    rows = [_with_water(row, water.get(row.driver_id)) for row in rows]
     rows.sort(key=lambda row: (ORDER.index(row.outcome), row.driver))
     place, elsewhere = _main_place(rows)
     return ThisMorning(
@@ -192,6 +196,27 @@ def _row(
         mornings=tuple(_mornings(days, ranges, all_judged, course)),
         range_words=_range_words(course),
         notices=notices,
+    )
+
+
+def _with_water(row: DriverRow, water: MorningWater | None) -> DriverRow:
+    """The row with what mass, urine and thirst say, where they lie outside the driver's own range.
+
+    The worse outcome stands and its reason comes first. A driver without a reading stays not measured
+    unless the marks are for the physician.
+    """
+    if water is None or water.outcome == "in range":
+        return row
+    if row.outcome == "not measured":
+        worse = SEVERITY[water.outcome] >= SEVERITY["refer"]
+    else:
+        worse = SEVERITY[water.outcome] > SEVERITY[row.outcome]
+    said, advice = (water.sentence,), (row.advice, water.advice)
+    return replace(
+        row,
+        outcome=water.outcome if worse else row.outcome,
+        reasons=said + row.reasons if worse else row.reasons + said,
+        advice=" ".join(dict.fromkeys(each for each in (advice[::-1] if worse else advice) if each)),
     )
 
 

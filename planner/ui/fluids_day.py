@@ -44,8 +44,8 @@ def _draw_findings(ctx: Context) -> None:
     for driver_id, each in odd.items():
         st.html(
             f'<div class="p-name">{escaped(names[driver_id])} {outcome_html(each.outcome)}</div>'
-            f'<div class="p-why">{escaped("; ".join(each.reasons))}: too little water '
-            f'{escaped(each.likelihood)}. <span class="p-do">{escaped(each.advice)}</span></div>'
+            f'<div class="p-why">{escaped(each.sentence)} '
+            f'<span class="p-do">{escaped(each.advice)}</span></div>'
         )
     rest = len(findings) - len(odd)
     note(
