@@ -12,7 +12,7 @@ from planner.services.readings import reading_words
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import table
 from planner.ui.text import escaped
-from planner.wording import counted
+from planner.wording import NO_BREAK, counted
 
 LINES_SHOWN = 12
 
@@ -58,7 +58,7 @@ def _refused(refused: tuple[RefusedLineError, ...]) -> None:
     table(
         ("Where", "Column", "Value", "What was wanted"),
         [
-            (f"Line {r.line}", r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
+            (f"Line{NO_BREAK}{r.line}", r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
             for r in refused
         ],
         caption="Refused lines; put them right in the file and import it again",
