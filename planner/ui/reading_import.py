@@ -55,12 +55,13 @@ def report_words(report: ImportReport, *, done: bool = False) -> str:
 def _refused(refused: tuple[RefusedLineError, ...]) -> None:
     if not refused:
         return
+    rows = [
+        (f"Line{NO_BREAK}{r.line}", r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
+        for r in refused
+    ]
     table(
         ("Where", "Column", "Value", "What was wanted"),
-        [
-            (f"Line{NO_BREAK}{r.line}", r.field, "empty" if r.value in ("", None) else str(r.value), r.expected)
-            for r in refused
-        ],
+        rows,
         caption="Refused lines; put them right in the file and import it again",
         stack=True,
     )
