@@ -10,8 +10,8 @@ import numpy as np
 import pytest
 from published_rows import KINDS
 
+from planner.physiology.fit_parameters import PARAMETERS
 from planner.physiology.fit_population import (
-    PARAMETERS,
     constants,
     fit,
     main,

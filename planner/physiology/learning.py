@@ -38,7 +38,7 @@ FINE_BREATHING: Final = np.linspace(-3.6, 3.6, 81)
 REACH_SD: Final = 4.0  # of the offset's standard deviation
 COARSE_OFFSETS: Final = 21
 FINE_OFFSETS: Final = 201
-ADMIXTURE_NODES: Final = 61
+ADMIXTURE_NODES: Final = 41
 ROWS_PER_PRODUCT: Final = 9  # of FINE_BREATHING; see _product
 READINGS_PER_BLOCK: Final = 512  # a block's likelihoods stay in the processor's cache
 
@@ -133,6 +133,7 @@ def _grids(
     # A device's bias is offset plus admixture's deviation; rows are offsets, columns admixtures.
     bias = offset[:, None] + admixture
     of_bias = np.exp(-0.5 * (bias / population.device_bias_sd_pct) ** 2)
+    of_bias_powers = [of_bias * bias**power for power in range(3)]
     prior = np.exp(-0.5 * FINE_BREATHING[:, None] ** 2 - 0.5 * (admixture / population.admixture_sd_pct) ** 2)
     summed_out = [_product(likelihood, of_bias) for likelihood in likelihoods]
     person = _normalised(prior * np.prod(summed_out, axis=0) if summed_out else prior)
@@ -143,8 +144,7 @@ def _grids(
         rest = prior * np.prod(others, axis=0) if others else prior
         devices[str(name)] = _normalised(likelihoods[device] * _product(rest, of_bias.T))
         moments = [
-            float((likelihoods[device] * _product(rest, (of_bias * bias**power).T)).sum())
-            for power in range(3)
+            float((likelihoods[device] * _product(rest, of_power.T)).sum()) for of_power in of_bias_powers
         ]
         mean, square = moments[1] / moments[0], moments[2] / moments[0]
         biases[str(name)] = Estimate(mean, float(np.sqrt(max(square - mean**2, 0.0))))

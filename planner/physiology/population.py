@@ -16,7 +16,7 @@ CONSTANTS_FILE: Final = "population.json"
 
 @dataclass(frozen=True)
 class Population:
-    """The population model's constants; meanings, priors and sources stand in `fit_population.PARAMETERS`."""
+    """The population model's constants; meanings, priors and sources stand in `fit_parameters.PARAMETERS`."""
 
     sea_level_paco2_mmhg: float
     paco2_fall_per_mmhg: float
