@@ -16,6 +16,7 @@ from pathlib import Path
 from unittest import mock
 
 import streamlit as st
+from streamlit import config
 from streamlit.testing.v1 import AppTest
 
 from planner.services.importing import load_demo
@@ -69,6 +70,7 @@ def measured_ms(stem: str) -> tuple[float, list[float]]:
 
 def main() -> None:
     logging.disable(logging.WARNING)
+    config.set_option("runner.magicEnabled", False)  # as the program's own configuration has it
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "planner.db"
         store = Store.open(path)
