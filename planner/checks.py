@@ -53,7 +53,7 @@ QUANTITIES: dict[str, Quantity] = {
         Quantity("pulse_bpm", "heart rate", "1/min", 25.0, 230.0),
         Quantity("days", "time spent at an elevation", "d", 0.0, 3650.0),
         Quantity("hours", "time", "h", 0.0, 87600.0),
-        Quantity("zones_east_h", "time zones crossed or still to be adapted to, east positive", "h", -24.0, 24.0),
+        Quantity("zones_east_h", "zones crossed or still to adapt to, east positive", "h", -24.0, 24.0),
         Quantity("clock_time_h", "time of day on the wall clock", "h", 0.0, 24.0),
         Quantity("sleep_h", "length of the habitual night's sleep", "h", 3.0, 14.0),
         Quantity("ventilatory_state", "lasting rise of alveolar ventilation over sea level's", "1", 0.0, 5.0),

@@ -125,7 +125,7 @@ def test_scalar_array_shape_and_nan(formula, values) -> None:
 @pytest.mark.parametrize(
     ("call", "message"),
     [
-        (lambda: oxygen.inspired_po2_mmhg(760.0, 20.9), r"oxygen_fraction: 20\.9 .* 0\.05 to 1 1 "),
+        (lambda: oxygen.inspired_po2_mmhg(760.0, 20.9), r"oxygen_fraction: 20\.9 .* 0\.05 to 1 "),
         (lambda: oxygen.inspired_po2_mmhg(101325.0), r"pressure_hpa: 101325\.0 .* 300 to 1100 hPa "),
         (lambda: oxygen.alveolar_po2_mmhg(150.0, 4.0), r"paco2_mmhg: 4\.0 .* 5 to 90 mmHg "),
         (

@@ -96,7 +96,7 @@ REFUSED: list[tuple[type, str, object, str]] = [
     (Commitment, "driver_id", 99, "the id of a stored driver"),
     (Stay, "depart_at", at(12, 19), "a time after arrive_at"),
     (Stay, "arrive_at", NAIVE, "a date and time with its zone"),
-    (Stay, "tent_oxygen_fraction", 15.0, "0.05 to 1 1"),
+    (Stay, "tent_oxygen_fraction", 15.0, "0.05 to 1 ("),
     (Stay, "tent_hours_per_night", 24.5, "0 to 24 h"),
     (Leg, "to_place_id", 1, "another place than from_place_id"),
     (Leg, "arrive_at", at(12, 6), "a time after depart_at"),
