@@ -6,17 +6,15 @@ from typing import Any
 
 import streamlit as st
 
-from planner.charts.driver import PICKED, driver_chart
+from planner.charts.driver import PICKED
 from planner.monitoring.own_range import own_range_in_words
 from planner.services.course import POSSESSIVES
-from planner.services.driver import DriverView, JudgedMark, Window
-from planner.services.readings import reading_words
-from planner.ui.cached import band_of, calendar_of, driver_view_of
+from planner.services.driver import DriverView, Window
+from planner.ui.cached import calendar_of
+from planner.ui.driver_cached import chart_of, driver_view_of, explanation_of, reading_choices
 from planner.ui.driver_parts import draw_explanation, draw_legend, draw_model, draw_next_round, draw_taught
-from planner.ui.frames import frame
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, answer, end_page, line, start_page
-from planner.units import from_house
 from planner.wording import day_and_clock, elevation, per_cent, per_cent_range
 
 WINDOWS: tuple[Window, ...] = ("12 weeks", "season", "all")
@@ -61,7 +59,7 @@ def show_driver(ctx: Context, view: DriverView) -> None:
     left, right = st.columns(2, gap="large")
     with left:
         st.subheader("One reading", anchor=False)
-        show_reading(view, pressed)
+        show_reading(ctx, view, window, pressed)
     with right:
         st.subheader("The next high round", anchor=False)
         draw_next_round(ctx, view)
@@ -73,102 +71,49 @@ def show_driver(ctx: Context, view: DriverView) -> None:
 
 def where_and_last(ctx: Context, view: DriverView) -> str:
     """Where the driver is, what is expected there now, and the last reading."""
-    where = view.population.where(ctx.now)
-    now = view.course_at(ctx.now).expected([ctx.now])[0]
+    where = view.population.where(view.now)
+    now = view.expected_now
     there = f"{where.place.name}, {elevation(where.bed_elevation_m, ctx.units)}"
     text = f"{'On the way to' if where.on_the_way else 'At'} {there}: "
     text += f"expect {per_cent_range(now.low_pct, now.high_pct)} {now.words}."
-    if not view.marks:
+    last = view.last_mark
+    if last is None:
         return f"{text} No reading yet."
-    last = view.marks[-1]
     when = day_and_clock(last.reading.taken_at, where.place.zone)
     return f"{text} Last reading {per_cent(last.reading.spo2_pct)}, {when}: {last.judgement.outcome}."
 
 
 def show_chart(ctx: Context, view: DriverView, window: Window) -> int | None:
     """Draw the chart and return the id of the reading that was pressed on it."""
-    since, until = view.window(window)
-    unit = ctx.units.elevation
-    shown = [mark for mark in view.marks if since <= mark.reading.taken_at <= until]
-    band = [
-        (each.at, each.own.low_pct, each.own.high_pct, each.population.low_pct, each.population.high_pct)
-        for each in band_of(ctx, view, window)
-    ]
-    ground = [
-        (at, from_house("elevation", bed_m, unit)) for at, bed_m in beds(view) if since <= at <= until
-    ]
-    rounds = [
-        (start, from_house("elevation", place.bed_elevation_m, unit), place.name)
-        for each in view.calendar.rounds
-        if view.calendar.is_high(each)
-        and since <= (start := view.calendar.starts_at(each)) <= until
-        and (place := view.calendar.place_of(each))
-    ]
-    readings = [mark_row(view, mark) for mark in shown]
-    chart = driver_chart(
-        frame(band, "at", "low", "high", "population_low", "population_high"),
-        frame(ground, "at", "elevation"),
-        frame(rounds, "at", "elevation", "label"),
-        frame(readings, "at", "spo2", "outcome", "kind", "reading", "words"),
-        frame([(ctx.now, "today")], "at", "label"),
-        unit,
-    )
     event: Any = st.vega_lite_chart(
-        spec=chart,
+        spec=chart_of(ctx, view, window),
         theme=None,
         width="stretch",
         on_select="rerun",
         selection_mode=PICKED,
         key=f"driver_chart_{view.driver.id}_{window}",
-        alt=f"{len(shown)} readings of {view.driver.name} against the own range, over the beds' elevation",
+        alt=f"The readings of {view.driver.name} against the own range, over the beds' elevation",
     )
     draw_legend()
     picked = event.selection.get(PICKED, [])
     return int(picked[0]["reading"]) if picked else None
 
 
-def mark_row(view: DriverView, mark: JudgedMark) -> tuple[object, ...]:
-    """One reading for the chart."""
-    reading = mark.reading
-    kind = "left out" if reading.left_out else reading.wakefulness
-    zone = view.calendar.places[reading.place_id].zone
-    # Short: on a telephone a long hint would leave the screen.
-    words = f"{day_and_clock(reading.taken_at, zone)}: {per_cent(reading.spo2_pct)}, {mark.judgement.outcome}"
-    return (reading.taken_at, reading.spo2_pct, mark.judgement.outcome, kind, reading.id, words)
-
-
-def show_reading(view: DriverView, pressed: int | None) -> None:
+def show_reading(ctx: Context, view: DriverView, window: Window, pressed: int | None) -> None:
     """Choose a reading, by hand or on the chart, and explain it."""
-    marks = {mark.reading.id: mark for mark in reversed(view.marks)}
-    if not marks:
-        line("No reading yet. Type the first one on Readings.")
+    choices = reading_choices(ctx, view, window)
+    if not choices:
+        line("No reading here yet. Type the first one on Readings.")
         return
-    ids = list(marks)
-
-    def words(id: int) -> str:
-        reading = marks[id].reading
-        zone = view.calendar.places[reading.place_id].zone
-        return f"{reading_words(reading, zone)}: {marks[id].judgement.outcome}"
-
+    ids = list(choices)
     chosen = st.selectbox(
         "Press a mark on the chart, or choose here",
         ids,
-        index=ids.index(pressed) if pressed in marks else 0,
-        format_func=words,
+        index=ids.index(pressed) if pressed in choices else 0,
+        format_func=choices.__getitem__,
         key=f"driver_reading_{view.driver.id}_{pressed}",
     )
-    draw_explanation(view, view.explanation(chosen))
-
-
-def beds(view: DriverView) -> list[tuple[Any, float]]:
-    """Where the driver sleeps: the elevation at every arrival and departure."""
-    points = []
-    for stay in view.population.stays:
-        bed_m = stay.bed_elevation_m
-        if bed_m is None:
-            bed_m = view.calendar.places[stay.place_id].bed_elevation_m
-        points += [(stay.arrive_at, bed_m), (stay.depart_at, bed_m)]
-    return points
+    draw_explanation(view, explanation_of(ctx, view, chosen))
 
 
 main()

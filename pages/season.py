@@ -16,7 +16,8 @@ from planner.services.season import (
     Whereabouts,
     whereabouts,
 )
-from planner.ui.cached import calendar_of, costs_of
+from planner.ui.cached import calendar_of
+from planner.ui.driver_cached import costs_of
 from planner.ui.frames import frame
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.tables import note, table

@@ -77,7 +77,7 @@ def test_a_driver_without_readings_or_stays(store: Store, monkeypatch: pytest.Mo
     assert not at.exception
     assert [error.value for error in at.error] == []
     assert "Nova Nobody: no reading teaches yet" in first_line(at)
-    assert "No reading yet. Type the first one on Readings." in said(at)
+    assert "No reading here yet. Type the first one on Readings." in said(at)
     assert "No high round ahead." in said(at)
 
 

@@ -93,19 +93,44 @@ class DriverView:
         return person_before(self.driver.id, self.past, self.now, course.history, course.origin)
 
     @cached_property
-    def marks(self) -> tuple[JudgedMark, ...]:
-        """Every reading, oldest first, judged as on its morning."""
-        found: list[JudgedMark] = []
+    def expected_now(self) -> ExpectedRange:
+        """What to expect of a reading awake at rest now."""
+        return self.course_at(self.now).expected([self.now])[0]
+
+    @cached_property
+    def beds(self) -> list[tuple[datetime, float]]:
+        """The elevation at which the driver sleeps, at every arrival and departure."""
+        points = []
+        for stay in self.population.stays:
+            bed_m = stay.bed_elevation_m
+            if bed_m is None:
+                bed_m = self.calendar.places[stay.place_id].bed_elevation_m
+            points += [(stay.arrive_at, bed_m), (stay.depart_at, bed_m)]
+        return points
+
+    def marks(self, since: datetime, until: datetime) -> tuple[JudgedMark, ...]:
+        """The readings of a window, oldest first, each judged as on its morning."""
+        chosen = [i for i, r in enumerate(self.readings) if since <= r.taken_at <= until]
         sick = [period for period in self.past.sick_periods if period.driver_id == self.driver.id]
-        for course, ours in self._by_stay([reading.taken_at for reading in self.readings]):
-            since = self.readings[ours.start].taken_at - max(CONFIRMS_WITHIN, SIGNS_LAST)
-            context = [r for r in self.readings[: ours.start] if r.taken_at >= since]
-            results = judged(course, [*context, *self.readings[ours]], sick)[len(context) :]
+        found: list[JudgedMark] = []
+        for course, part in self._by_stay([self.readings[i].taken_at for i in chosen]):
+            ours = [self.readings[i] for i in chosen[part]]
+            earliest = ours[0].taken_at - max(CONFIRMS_WITHIN, SIGNS_LAST)
+            context = [r for r in self.readings[: chosen[part.start]] if r.taken_at >= earliest]
+            results = judged(course, [*context, *ours], sick)[len(context) :]
             found += [
                 JudgedMark(sample, judgement, why_it_teaches_nothing(sample.reading, sick))
                 for sample, judgement in results
             ]
         return tuple(found)
+
+    @cached_property
+    def last_mark(self) -> JudgedMark | None:
+        """The newest reading with its outcome."""
+        if not self.readings:
+            return None
+        taken_at = self.readings[-1].taken_at
+        return self.marks(taken_at, taken_at)[-1]
 
     def band(self, since: datetime, until: datetime) -> list[BandPoint]:
         """The own and the population's range along the course, with a step at every arrival.
@@ -132,8 +157,10 @@ class DriverView:
 
     def explanation(self, reading_id: int) -> Explanation:
         """Take one reading apart: what was expected, from what, and how sure that was."""
-        mark = next(each for each in self.marks if each.reading.id == reading_id)
-        reading = mark.reading
+        reading = next(each for each in self.readings if each.id == reading_id)
+        [mark] = [
+            each for each in self.marks(reading.taken_at, reading.taken_at) if each.reading.id == reading_id
+        ]
         course = self.course_at(reading.taken_at)
         at_h = (reading.taken_at - course.origin) / ONE_HOUR
         own, population = (
