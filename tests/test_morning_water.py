@@ -72,7 +72,7 @@ def test_the_baseline_is_the_median_of_four_weeks_before() -> None:
     empty = MorningMark(1, NOW - timedelta(days=9), None)
     odd = MorningMark(1, NOW - timedelta(days=10), 60.0)
     marks = [*EARLIER, old, later, empty, odd]
-    assert baseline_kg(mark(0.0), marks) == pytest.approx(80.0, abs=0.2)
+    assert baseline_kg(NOW, marks) == pytest.approx(80.0, abs=0.2)
 
 
 def test_up_high_pale_urine_is_not_trusted() -> None:

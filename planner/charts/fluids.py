@@ -10,15 +10,17 @@ import html
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Any, Final
 
 import altair as alt
 import pandas as pd
 
+from planner.charts.spec import as_text, named, with_data
 from planner.charts.theme import Mode, colour, dressed
 
 MOST_BOTTLES: Final = 6
-CHART_HEIGHT: Final = 240
+CHART_HEIGHT: Final = 300
 
 FLUIDS_STYLE: Final = """
 .p-course{display:grid;gap:0;border-top:2px solid var(--course-line);margin:.35rem 0 .5rem}
@@ -90,27 +92,30 @@ def _step(step: CourseStep) -> str:
     )
 
 
-def sweat_chart(weighed: pd.DataFrame, unit: str, mode: Mode = "screen") -> Any:
+def sweat_chart(weighed: pd.DataFrame, unit: str, mode: Mode = "screen") -> dict[str, Any]:
     """Draw one driver's weighed sweat rates with their error beside what was predicted.
 
     Parameters: `weighed` has `at` (text, in order), `rate`, `low`, `high`, `predicted` [`unit`], `words`,
     `taught` (bool).
     """
-    order = list(dict.fromkeys(weighed["at"]))
-    x = alt.X("at:N", sort=order, title=None, axis=alt.Axis(labelAngle=-40, labelLimit=160, grid=False))
-    top = float(max(weighed["high"].max(), weighed["predicted"].fillna(0.0).max())) * 1.05
-    scale = alt.Scale(domain=[min(0.0, float(weighed["low"].min())), top], nice=True)
-    base = alt.Chart(weighed).encode(x=x, tooltip=[alt.Tooltip("words:N", title="weighing")])
+    return with_data(_structure(unit, mode), weighed=weighed)
+
+
+@lru_cache(maxsize=16)
+def _structure(unit: str, mode: Mode) -> str:
+    x = alt.X("at:N", sort=None, title=None, axis=alt.Axis(labelAngle=-40, labelLimit=160, grid=False))
+    base = named("weighed").encode(x=x, tooltip=[alt.Tooltip("words:N", title="weighing")])
     error = base.mark_rule(color=colour("own_range_line", mode), strokeWidth=2).encode(
-        y=alt.Y("low:Q", scale=scale, title=f"sweat, {unit}"), y2="high:Q"
+        y=alt.Y("low:Q", title=f"sweat, {unit}", scale=alt.Scale(zero=True, nice=True)), y2="high:Q"
     )
     taught, left_out = (alt.value(colour(name, mode)) for name in ("accent", "muted"))
     rate = base.mark_point(size=70, filled=True, opacity=1.0).encode(
-        y=alt.Y("rate:Q", scale=scale),
+        y=alt.Y("rate:Q"),
         color=alt.condition("datum.taught", taught, left_out),
         shape=alt.condition("datum.taught", alt.value("circle"), alt.value("cross")),
     )
     predicted = base.mark_tick(color=colour("population_line", mode), thickness=2, width=18).encode(
-        y=alt.Y("predicted:Q", scale=scale)
+        y=alt.Y("predicted:Q")
     )
-    return dressed((error + predicted + rate).properties(height=CHART_HEIGHT, width="container"), mode)
+    chart = dressed((error + predicted + rate).properties(height=CHART_HEIGHT, width="container"), mode)
+    return as_text(chart)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from datetime import timedelta
+from datetime import datetime, timedelta
 from statistics import median
 from typing import Final
 
@@ -53,12 +53,12 @@ class MorningWater:
         return f"{text[:1].upper()}{text[1:]}{verdict}."
 
 
-def baseline_kg(mark: MorningMark, earlier: Sequence[MorningMark]) -> float | None:
-    """The driver's own morning mass before this mark: the median of the last four weeks, of three or more."""
+def baseline_kg(before: datetime, marks: Sequence[MorningMark]) -> float | None:
+    """The driver's own morning mass before an instant: the median of four weeks, of three or more."""
     masses = [
         each.mass_kg
-        for each in earlier
-        if each.mass_kg is not None and mark.at - BASELINE_LOOKS_BACK <= each.at < mark.at
+        for each in marks
+        if each.mass_kg is not None and before - BASELINE_LOOKS_BACK <= each.at < before
     ]
     return median(masses) if len(masses) >= BASELINE_MORNINGS else None
 
@@ -74,7 +74,7 @@ def judge_morning(
     Down 1 % is looked at again, down 2 % goes to the physician, beyond 3 % either way the entry is doubted
     first. Parameters: `earlier` are marks of the same driver in any order; `elevation_m` of the bed.
     """
-    baseline = baseline_kg(mark, earlier)
+    baseline = baseline_kg(mark.at, earlier)
     change = None
     if baseline is not None and mark.mass_kg is not None:
         change = 100.0 * (mark.mass_kg / baseline - 1.0)

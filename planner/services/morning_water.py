@@ -10,7 +10,7 @@ from zoneinfo import ZoneInfo
 
 from planner.errors import InputError
 from planner.hydration.model import MorningMark
-from planner.hydration.morning import BASELINE_LOOKS_BACK, MorningWater, judge_morning
+from planner.hydration.morning import BASELINE_LOOKS_BACK, MorningWater, baseline_kg, judge_morning
 from planner.season.model import Driver
 from planner.services.course import DriverCourse
 from planner.services.season import Calendar, read_calendar
@@ -31,6 +31,15 @@ class TypedMark:
     urine_colour: int | None = None
     urine_specific_gravity: float | None = None
     thirsty: bool | None = None
+
+
+@dataclass(frozen=True)
+class UsualMass:
+    """The median of the last four weeks' mornings, None of fewer than three; the last morning weighed."""
+
+    baseline_kg: float | None
+    last: MorningMark | None
+    zone: str
 
 
 def morning_fluid_findings(
@@ -60,6 +69,15 @@ def marks_of_today(store: Store, driver: Driver, at: datetime, calendar: Calenda
     zone = ZoneInfo(DriverCourse(calendar, driver).where(at).place.zone)
     marks = [m for m in store.all(MorningMark, driver_id=driver.id) if at - LOOKS_BACK <= m.at <= at]
     return _mornings(marks, zone).get(at.astimezone(zone).date())
+
+
+def usual_morning_mass(store: Store, driver: Driver, at: datetime, calendar: Calendar) -> UsualMass:
+    """A driver's usual morning mass up to an instant, by the same rule as the morning's judgement."""
+    zone = DriverCourse(calendar, driver).where(at).place.zone
+    marks = [m for m in store.all(MorningMark, driver_id=driver.id) if at - LOOKS_BACK <= m.at <= at]
+    mornings = list(_mornings(marks, ZoneInfo(zone)).values())
+    weighed = [m for m in mornings if m.mass_kg is not None]
+    return UsualMass(baseline_kg(at, weighed), weighed[-1] if weighed else None, zone)
 
 
 def take_mark(store: Store, typed: TypedMark, *, by: str, now: datetime) -> tuple[MorningMark, int]:

@@ -7,6 +7,7 @@ from typing import Final
 import streamlit as st
 
 from planner.errors import PlannerError
+from planner.physiology.body_water import ALTITUDE_ADD_ON_ML
 from planner.services.fluids import day_water_of
 from planner.services.morning_water import TypedMark, morning_fluid_findings, take_mark
 from planner.services.typed import typed_value
@@ -17,7 +18,7 @@ from planner.ui.morning_rows import outcome_html
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import note, table
 from planner.ui.text import escaped, literal
-from planner.wording import elevation, unit_name
+from planner.wording import elevation, unit_name, volume
 
 _ROUND: Final = "mark round"  # moves with every mark kept, so that the next form begins empty
 URINE_COLOURS: Final = tuple(range(1, 9))
@@ -114,8 +115,11 @@ def _draw_water(ctx: Context) -> None:
         for each in day_water_of(calendar_of(ctx), ctx.now)
     ]
     table(["", "sleeps at", "water today"], rows, right=(2,), caption="The day's water, without the sessions")
+    add_on = ", ".join(
+        f"{volume(millilitres, ctx.units)} more from {elevation(from_m, ctx.units)}"
+        for from_m, millilitres in ALTITUDE_ADD_ON_ML
+    )
     note(
-        "All water, food included, which brings about a fifth. Low: EFSA 2010; high: IOM 2005. From 1 500 m "
-        "0.2 L more, from 2 500 m 0.5 L, from 3 500 m 1 L in the first four days: judgement. More drink does "
-        "not undo what altitude takes from the blood."
+        "All water, food included, which brings about a fifth. Low: EFSA 2010; high: IOM 2005. In the first "
+        f"four days {add_on}: judgement. More drink does not undo what altitude takes from the blood."
     )

@@ -80,8 +80,8 @@ def _draw_driver(ctx: Context, taught: Taught, drinks: SessionDrinks) -> None:
     shown = taught.weighed[:SHOWN]
     places = calendar_of(ctx).places
     zones = {w.weighing.id: places[w.weighing.place_id].zone for w in shown}
-    st.altair_chart(
-        sweat_chart(_frame(ctx, shown, zones), rate_unit(ctx.units)),
+    st.vega_lite_chart(
+        spec=sweat_chart(_frame(ctx, shown, zones), rate_unit(ctx.units)),
         theme=None,
         width="stretch",
         alt="Weighed sweat rates, oldest first: "
