@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from datetime import datetime
+from datetime import datetime, timedelta
 
 import streamlit as st
 
@@ -32,12 +32,14 @@ from planner.wording import (
     per_cent_range,
 )
 
+MARGIN = timedelta(days=30)  # drawn before the first round and after the last
+
 
 def main() -> None:
     """Draw the page."""
     ctx = start_page("Season")
     calendar = calendar_of(ctx)
-    if not calendar.rounds:
+    if not calendar.season_at(ctx.now):
         answer("No rounds yet. Add places and rounds on Team, or read them from a file on Readings.")
     else:
         show_season(ctx, calendar)
@@ -66,11 +68,12 @@ def show_season(ctx: Context, calendar: Calendar) -> None:
 
 def headline(ctx: Context, calendar: Calendar) -> str:
     """Say how many rounds are high, and which one comes next."""
-    high = [each for each in calendar.rounds if calendar.is_high(each)]
-    text = f"{counted(len(calendar.rounds), 'round')}, {len(high)} of them high."
+    rounds = calendar.season_at(ctx.now)
+    high = [each for each in rounds if calendar.is_high(each)]
+    text = f"{counted(len(rounds), 'round')}, {len(high)} of them high."
     coming = [each for each in high if calendar.ends_at(each) > ctx.now]
     if not high:
-        return f"{counted(len(calendar.rounds), 'round')}, none of them high."
+        return f"{counted(len(rounds), 'round')}, none of them high."
     if not coming:
         return f"{text} The high ones are over."
     place = calendar.place_of(coming[0])
@@ -84,7 +87,8 @@ def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> N
     """Draw the elevation over the year: the calendar as the ground, the driver's course over it."""
     unit = ctx.units.elevation
     ground, rounds = [], []
-    for each in calendar.rounds:
+    shown = calendar.season_at(ctx.now)
+    for each in shown:
         place = calendar.place_of(each)
         height = from_house("elevation", place.track_elevation_m, unit)
         start, end = calendar.starts_at(each), calendar.ends_at(each)
@@ -92,14 +96,17 @@ def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> N
         label = f"{each.name}, {day(calendar.race_of(each).starts_at, place.zone).split(' ', 1)[1]}"
         top = from_house("elevation", max(place.track_elevation_m, place.bed_elevation_m), unit)
         rounds.append((start + (end - start) / 2, height, top, label, calendar.is_high(each)))
+    first = calendar.starts_at(shown[0]) - MARGIN
+    last = max(calendar.ends_at(shown[-1]), ctx.now) + MARGIN
     course = [
         (instant, from_house("elevation", bed_m, unit), f"{where}, {elevation(bed_m, ctx.units)}")
         for instant, bed_m, where in course_of(calendar, driver)
+        if first <= instant <= last
     ]
     ticks = [
         (each.starts_at, f"{each.name}, {day(each.starts_at, calendar.places[each.place_id].zone)}")
         for each in calendar.commitments
-        if driver is not None and each.driver_id == driver.id
+        if driver is not None and each.driver_id == driver.id and first <= each.starts_at <= last
     ]
     st.vega_lite_chart(
         spec=season_chart(

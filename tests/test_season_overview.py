@@ -77,7 +77,7 @@ def test_an_arrival_after_three_in_the_night_is_no_night() -> None:
 
 
 def test_only_high_rounds_cost_something_and_a_longer_stay_gives_more() -> None:
-    [short], [long] = (round_costs(calendar((stay_there(days),)), DRIVER) for days in (1.0, 10.0))
+    [short], [long] = (round_costs(calendar((stay_there(days),)), DRIVER, FRIDAY) for days in (1.0, 10.0))
     assert short.round.name == "Cerro Round"
     assert (short.nights_there, long.nights_there) == (1, 10)
     assert short.outlook is not None
@@ -88,20 +88,20 @@ def test_only_high_rounds_cost_something_and_a_longer_stay_gives_more() -> None:
 
 
 def test_without_a_stay_there_is_no_outlook() -> None:
-    [cost] = round_costs(calendar(()), DRIVER)
+    [cost] = round_costs(calendar(()), DRIVER, FRIDAY)
     assert cost.outlook is None
     assert cost.nights_there == 0
 
 
 def test_free_days_lie_between_the_last_fixed_thing_and_the_first_session() -> None:
-    [cost] = round_costs(calendar((stay_there(1.0),)), DRIVER)
+    [cost] = round_costs(calendar((stay_there(1.0),)), DRIVER, FRIDAY)
     # computed by hand: 31 May 15:00 to 5 June 15:00 UTC
     assert (cost.free_days_before, cost.free_since) == (5, "Cold Bay Round")
     factory = Commitment(
         DRIVER.id, "Factory day", LOW.id, LOW_RACE + timedelta(days=1), LOW_RACE + timedelta(days=2)
     )
     somebody_else = Commitment(99, "Fair", LOW.id, LOW_RACE + timedelta(days=3), LOW_RACE + timedelta(days=4))
-    [cost] = round_costs(calendar((stay_there(1.0),), (factory, somebody_else)), DRIVER)
+    [cost] = round_costs(calendar((stay_there(1.0),), (factory, somebody_else)), DRIVER, FRIDAY)
     assert (cost.free_days_before, cost.free_since) == (3, "Factory day")
 
 

@@ -20,7 +20,7 @@ from planner.season.model import Driver
 from planner.services.course import ONE_HOUR, DriverCourse
 from planner.services.morning import CLOCKS_DIFFER, judged
 from planner.services.own import Past, person_before
-from planner.services.season import Calendar, RoundCost, round_costs
+from planner.services.season import SEASON_BEHIND, Calendar, RoundCost, round_costs
 from planner.store.store import Store
 
 Window: TypeAlias = Literal["12 weeks", "season", "all"]
@@ -29,7 +29,6 @@ Window: TypeAlias = Literal["12 weeks", "season", "all"]
 MOST_MORNINGS: Final = 366
 MORNING: Final = time(6)  # UTC; the range hardly moves within a day
 WEEKS_BEHIND, WEEKS_AHEAD = timedelta(weeks=10), timedelta(weeks=2)
-SEASON_BEHIND: Final = timedelta(days=330)
 UTC: Final = ZoneInfo("UTC")
 
 
@@ -147,12 +146,12 @@ class DriverView:
     @cached_property
     def costs(self) -> list[RoundCost]:
         """What the present plan gives at the high rounds, by what is known of the driver now."""
-        return round_costs(self.calendar, self.driver, self.person)
+        return round_costs(self.calendar, self.driver, self.now, self.person)
 
     @cached_property
     def next_high_round(self) -> tuple[RoundCost, RoundCost] | None:
         """The next high round by what is known of the driver now, and by the population alone."""
-        pairs = zip(self.costs, round_costs(self.calendar, self.driver), strict=True)
+        pairs = zip(self.costs, round_costs(self.calendar, self.driver, self.now), strict=True)
         return next((pair for pair in pairs if pair[0].first_session.starts_at > self.now), None)
 
     def explanation(self, reading_id: int) -> Explanation:

@@ -19,6 +19,9 @@ from planner.season.nights import MIDDLE_OF_THE_NIGHT
 from planner.season.travel import LegTimes
 from planner.store.store import Store
 
+# A season is what lies within these of today: judgement, a little less than a year either way.
+SEASON_BEHIND: Final = timedelta(days=330)
+SEASON_AHEAD: Final = timedelta(days=330)
 ONE_DAY: Final = timedelta(days=1)
 
 
@@ -57,6 +60,12 @@ class Calendar:
         """Return the round's first race, or its last session when none is called a race."""
         sessions = self.sessions[given.id]
         return next((session for session in sessions if session.kind == "race"), sessions[-1])
+
+    def season_at(self, at: datetime) -> tuple[Round, ...]:
+        """Return the rounds of the season around an instant: a store may hold several years."""
+        return tuple(
+            each for each in self.rounds if at - SEASON_BEHIND < self.starts_at(each) < at + SEASON_AHEAD
+        )
 
     def is_high(self, given: Round) -> bool:
         """Return whether track or beds lie high enough to cost something."""
@@ -109,12 +118,15 @@ def read_calendar(store: Store) -> Calendar:
     )
 
 
-def round_costs(calendar: Calendar, driver: Driver, person: PersonPosterior | None = None) -> list[RoundCost]:
-    """Return what the plan gives the driver at every high round, in time order.
+def round_costs(
+    calendar: Calendar, driver: Driver, at: datetime, person: PersonPosterior | None = None
+) -> list[RoundCost]:
+    """Return what the plan gives the driver at every high round of the season, in time order.
 
-    `person` is what readings have taught of the driver; None = the population.
+    Parameters: `at` is an instant of that season; `person` is what readings have taught of the driver,
+    None = the population.
     """
-    high = [each for each in calendar.rounds if calendar.is_high(each)]
+    high = [each for each in calendar.season_at(at) if calendar.is_high(each)]
     points = [
         round_point(
             each.id,
