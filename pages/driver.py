@@ -13,6 +13,7 @@ from planner.services.driver import DriverView, Window
 from planner.ui.cached import calendar_of
 from planner.ui.driver_cached import chart_of, driver_view_of, explanation_of, reading_choices
 from planner.ui.driver_parts import draw_explanation, draw_legend, draw_model, draw_next_round, draw_taught
+from planner.ui.fluids_driver import draw_driver_fluids
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.wording import day_and_clock, elevation, per_cent, per_cent_range
@@ -60,6 +61,7 @@ def show_driver(ctx: Context, view: DriverView) -> None:
     with left:
         st.subheader("One reading", anchor=False)
         show_reading(ctx, view, window, pressed)
+        draw_driver_fluids(ctx, view.driver)
     with right:
         st.subheader("The next high round", anchor=False)
         draw_next_round(ctx, view)

@@ -192,3 +192,13 @@ def test_a_team_without_sessions_can_weigh(store: Store, monkeypatch: pytest.Mon
     (kept,) = store.all(Weighing)
     assert (kept.driver_id, kept.session_id) == (driver.id, None)
     assert abs(kept.starts_at - now(store)) < timedelta(minutes=1)
+
+
+def test_the_driver_page_shows_mass_and_sweat(page: AppTest) -> None:
+    at = open_page("driver")
+    assert not at.exception
+    shown = said(at)
+    assert "Usual morning mass 79.1 kg" in shown
+    assert "Sweat to expect in Qualifying, Talquime Round: 0.95 L/h" in shown
+    assert "weighings in like conditions" in shown
+    assert "Drinks and weighings" in [button.label for button in at.button]
