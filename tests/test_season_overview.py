@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from datetime import UTC, datetime, timedelta
 
 import pytest
@@ -116,3 +117,21 @@ def test_where_everybody_is() -> None:
     [before] = whereabouts(known, FRIDAY - timedelta(days=30))
     assert before.holding is None
     assert before.next_leg is not None
+
+
+def test_seasons_are_parted_by_the_winter_break() -> None:
+    known = calendar(())
+    later = Round(1, "Next year's round", LOW.id, id=3)
+    start = FRIDAY + timedelta(days=240)
+    two_years = replace(
+        known,
+        rounds=(*known.rounds, later),
+        sessions={
+            **known.sessions,
+            later.id: (Session(later.id, "race", "Race", start, start + timedelta(hours=2), id=9),),
+        },
+    )
+    assert two_years.season_at(FRIDAY) == known.rounds
+    assert two_years.season_at(FRIDAY - timedelta(days=100)) == known.rounds
+    assert two_years.season_at(FRIDAY + timedelta(days=30)) == (later,)
+    assert two_years.season_at(start + timedelta(days=500)) == (later,)

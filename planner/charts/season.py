@@ -14,6 +14,7 @@ from planner.charts.theme import Mode, colour, dressed
 HEIGHT: Final = 440
 # Names stand upright on the ground; this much of the height is kept free above the highest round.
 ROOM_FOR_NAMES: Final = 0.42
+LONGEST_NAME_PX: Final = 160
 # Narrower than this, only high rounds bear their names, and only where they do not run into each other.
 NARROW_PX: Final = 700
 NARROW_GAP: Final = 0.05  # share of the season: about a line's height on a phone
@@ -107,7 +108,14 @@ def _signposts(x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
     high = base.transform_filter(f"datum.high && (width >= {NARROW_PX} || datum.apart)")
     low = base.transform_filter(f"!datum.high && width >= {NARROW_PX}")
     name: dict[str, Any] = {"y": alt.Y("top:Q"), "text": alt.Text("label:N")}
-    stands: dict[str, Any] = {"angle": 270, "align": "left", "baseline": "middle", "dx": 9, "fontSize": 11}
+    stands: dict[str, Any] = {
+        "angle": 270,
+        "align": "left",
+        "baseline": "middle",
+        "dx": 9,
+        "fontSize": 11,
+        "limit": LONGEST_NAME_PX,
+    }
     behind: dict[str, Any] = {"stroke": colour("page", mode), "strokeWidth": 3, "strokeJoin": "round"}
     return [
         base.mark_point(filled=True, size=28, shape="circle", color=colour("course_line", mode), opacity=1),

@@ -20,7 +20,7 @@ from planner.season.model import Driver
 from planner.services.course import ONE_HOUR, DriverCourse
 from planner.services.morning import CLOCKS_DIFFER, judged
 from planner.services.own import Past, person_before
-from planner.services.season import SEASON_BEHIND, Calendar, RoundCost, round_costs
+from planner.services.season import Calendar, RoundCost, round_costs
 from planner.store.store import Store
 
 Window: TypeAlias = Literal["12 weeks", "season", "all"]
@@ -29,6 +29,7 @@ Window: TypeAlias = Literal["12 weeks", "season", "all"]
 MOST_MORNINGS: Final = 366
 MORNING: Final = time(6)  # UTC; the range hardly moves within a day
 WEEKS_BEHIND, WEEKS_AHEAD = timedelta(weeks=10), timedelta(weeks=2)
+MARGIN: Final = timedelta(days=14)
 UTC: Final = ZoneInfo("UTC")
 
 
@@ -178,13 +179,12 @@ class DriverView:
         """From when to when the chart runs."""
         if chosen == "12 weeks":
             return self.now - WEEKS_BEHIND, self.now + WEEKS_AHEAD
-        starts = [self.calendar.starts_at(each) for each in self.calendar.rounds]
-        ends = [self.calendar.ends_at(each) for each in self.calendar.rounds]
-        begun = [*starts, *(reading.taken_at for reading in self.readings)]
-        if chosen == "season":
-            begun = [at for at in begun if at > self.now - SEASON_BEHIND]
-        margin = timedelta(days=5)
-        return min([*begun, self.now]) - margin, max([*ends, self.now]) + margin
+        rounds = self.calendar.season_at(self.now) if chosen == "season" else self.calendar.rounds
+        begun = [self.calendar.starts_at(each) for each in rounds[:1]]
+        if chosen == "all":
+            begun += [reading.taken_at for reading in self.readings[:1]]
+        ends = [self.calendar.ends_at(each) for each in rounds]
+        return min([*begun, self.now]) - MARGIN, max([*ends, self.now]) + MARGIN
 
     def course_at(self, at: datetime) -> DriverCourse:
         """The course with what was known at an instant."""

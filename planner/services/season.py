@@ -19,9 +19,7 @@ from planner.season.nights import MIDDLE_OF_THE_NIGHT
 from planner.season.travel import LegTimes
 from planner.store.store import Store
 
-# A season is what lies within these of today: judgement, a little less than a year either way.
-SEASON_BEHIND: Final = timedelta(days=330)
-SEASON_AHEAD: Final = timedelta(days=330)
+WINTER_BREAK: Final = timedelta(days=75)  # judgement: no series rests so long in mid-season
 ONE_DAY: Final = timedelta(days=1)
 
 
@@ -62,10 +60,18 @@ class Calendar:
         return next((session for session in sessions if session.kind == "race"), sessions[-1])
 
     def season_at(self, at: datetime) -> tuple[Round, ...]:
-        """Return the rounds of the season around an instant: a store may hold several years."""
-        return tuple(
-            each for each in self.rounds if at - SEASON_BEHIND < self.starts_at(each) < at + SEASON_AHEAD
-        )
+        """Return the rounds of the season that is on or comes next, else of the last one.
+
+        A store may hold several years; a break longer than `WINTER_BREAK` parts two seasons.
+        """
+        season: list[Round] = []
+        for given in self.rounds:
+            if season and self.starts_at(given) - self.ends_at(season[-1]) > WINTER_BREAK:
+                if self.ends_at(season[-1]) >= at:
+                    break
+                season = []
+            season.append(given)
+        return tuple(season)
 
     def is_high(self, given: Round) -> bool:
         """Return whether track or beds lie high enough to cost something."""
@@ -201,4 +207,3 @@ def _last_fixed_before(calendar: Calendar, driver: Driver, given: Round) -> tupl
     fixed = [(calendar.ends_at(other), other.name) for other in calendar.rounds]
     fixed += [(one.ends_at, one.name) for one in calendar.commitments if one.driver_id == driver.id]
     return max((pair for pair in fixed if pair[0] <= start), default=None)
-
