@@ -92,7 +92,8 @@ def test_the_cockpit_measured_is_kept_and_named(page: AppTest, demo_store: Store
 
 def test_other_clothing_moves_the_plan(page: AppTest, demo_store: Store) -> None:
     before = said(page)
-    page.selectbox[1].set_value("overalls down to the waist").run()
+    page.selectbox[1].set_value("overalls down to the waist")
+    page = press(page, "Plan with these")
     assert not page.exception
     assert worn_ensemble(demo_store).name == "overalls down to the waist"
     assert said(page) != before

@@ -104,12 +104,14 @@ def draw_clothing(ctx: Context, drinks: SessionDrinks) -> None:
     known = ensembles_of(ctx.store)
     with st.expander(f"Clothing and car: {literal(drinks.ensemble.name)}, {drinks.car}"), plain_errors():
         names = [each.name for each in known]
-        worn = st.selectbox("Clothing in the car", names, index=names.index(drinks.ensemble.name))
-        car = st.segmented_control("Car", list(CARS), default=drinks.car, required=True)
-        if (worn, car) != (drinks.ensemble.name, drinks.car):
-            choose_ensemble(ctx.store, worn)
-            choose_car(ctx.store, car)
-            st.rerun()
+        with st.form("worn", border=False):
+            worn = st.selectbox("Clothing in the car", names, index=names.index(drinks.ensemble.name))
+            car = st.segmented_control("Car", list(CARS), default=drinks.car, required=True)
+            if st.form_submit_button("Plan with these"):
+                choose_ensemble(ctx.store, worn)
+                choose_car(ctx.store, car)
+                note_for_next_run(f"Planned for {worn}, {car}.")
+                st.rerun()
         note(f"Source of the figures: {drinks.ensemble.source}.")
         with st.form("ensemble", border=False):
             kept = _ensemble_fields(drinks.ensemble)
