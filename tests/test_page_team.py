@@ -11,7 +11,9 @@ from streamlit.testing.v1 import AppTest
 from planner.errors import InputError
 from planner.physiology.drinking import DEFAULT_CAP_L_PER_H
 from planner.season.model import Commitment, Driver, Place, Round, Session
+from planner.services.fluids import next_session, plan_session, sessions_in_order
 from planner.services.limits import drinks_cap_l_per_h, keep_limits, kept_limits, season_limits
+from planner.services.season import read_calendar
 from planner.services.team import begin_own_team
 from planner.services.workspace import choose_units, is_demo, last_name, mark_begun_empty
 from planner.store.store import Store
@@ -282,3 +284,15 @@ def test_putting_the_demo_aside_is_one_change_set(demo_store: Store) -> None:
     assert done == before.id + 1
     assert demo_store.all(Place) == []
     assert demo_store.all(Round) == []
+
+
+def test_the_drinking_limit_holds_in_the_plan_of_a_session(demo_store: Store) -> None:
+    calendar = read_calendar(demo_store)
+    now = datetime(2026, 6, 6, 14, tzinfo=UTC)
+    at = next_session(sessions_in_order(calendar), now)
+    assert at is not None
+    keep_limits(demo_store, kept_limits(demo_store) | {"drinks_cap_l_per_h": 0.3})
+    planned = plan_session(demo_store, calendar, at, now=now)
+    assert planned.rows
+    for row in planned.rows:
+        assert float(row.plan.in_car_ml.high) <= 300.0 * at.hours + 1e-6

@@ -18,11 +18,11 @@ from planner.hydration.plan import DrinksPlan, Setting, TimelineStep, plan_drink
 from planner.hydration.reasons import plan_reasons
 from planner.hydration.weighings import Occasion, Weighed, evidence_for, weigh_up
 from planner.physiology.body_water import CONCENTRATED_SPECIFIC_GRAVITY, DARK_URINE_COLOUR, day_water_ml
-from planner.physiology.drinking import DEFAULT_CAP_L_PER_H
 from planner.physiology.ranges import Range
 from planner.season.model import Driver, Place, Round, Session
 from planner.services.cockpit import car_of, ensembles_of, expected_conditions, worn_ensemble
 from planner.services.course import DriverCourse
+from planner.services.limits import drinks_cap_l_per_h
 from planner.services.morning import air_at
 from planner.services.morning_water import marks_of_today
 from planner.services.season import Calendar
@@ -159,12 +159,13 @@ def plan_session(
     now: datetime,
     weighed: Iterable[Weighed] | None = None,
     stints: int = 1,
-    drink_cap_l_per_h: float = DEFAULT_CAP_L_PER_H,
+    drink_cap_l_per_h: float | None = None,
     units: UnitChoice = METRIC,
 ) -> SessionDrinks:
     """Plan a session for all drivers in one pass.
 
-    `weighed` are the weighings to learn from; read from the store when not given.
+    `weighed` are the weighings to learn from; read from the store when not given, as is the hourly limit that
+    the coach has set on Team.
     Raises: InputError naming what cannot be.
     """
     if not 1 <= stints <= MOST_STINTS:
@@ -183,7 +184,7 @@ def plan_session(
         pressure_hpa=pressure_hpa,
         stints=float(stints),
         bottle_ml=_column([d.bottle_ml for d in drivers]),
-        drink_cap_l_per_h=drink_cap_l_per_h,
+        drink_cap_l_per_h=drinks_cap_l_per_h(store) if drink_cap_l_per_h is None else drink_cap_l_per_h,
         sweat_sodium_mmol_l=_column([d.sweat_sodium_mmol_l for d in drivers]),
         urine_dark=_column([_urine_dark(store, calendar, d, at, now) for d in drivers]),
         hours_to_next=hours_to_next,
