@@ -3,7 +3,9 @@
 Night `n` lies between the mornings (07:00) of day `n` and day `n + 1`. A plan names a bed for every night, or
 ON_THE_WAY. Discretised are: one place a night; a journey fills whole days, departs at 10:00 (later when that
 would arrive on the day before) and no session or appointment falls on its days; ten hours of a day by day,
-fourteen by night; air by the model atmosphere or the pressures given for a place. States and costs are not
+fourteen by night; air by the model atmosphere. The body clock is followed from 12 days before a race that
+limits it and counts as adapted before then: nobody needs longer, except a driver who keeps changing zones,
+for whom the offset may be wrong by what was left then less what has worn off. States and costs are not
 rounded. Within a day the true course may put a stretch of at most 24 h at another of the two places; with the
 fitted time constant upwards that moves the state by at most 16 % of the difference between their targets for
 each move, and the error shrinks by at least 4 % a day afterwards. `tests/test_day_model.py` measures it.
@@ -14,7 +16,7 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from datetime import date
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import Final, Literal, TypeAlias
 
 import numpy as np
@@ -30,7 +32,10 @@ ON_THE_WAY: Final = -1
 DAY_HOURS: Final = 10.0
 NIGHT_HOURS: Final = 14.0
 MOST_NIGHTS_LOST: Final = 2
+CLOCK_SLACK_H: Final = 1e-9  # room for the rounding of sums
 IMPOSSIBLE: Final = -1
+CLOCK_DAYS: Final = 12  # the body clock is followed for so long before a race that limits it: judgement
+HIGHEST_RISK_CLASS: Final = 2
 
 Measure: TypeAlias = Literal["SpO2", "capacity"]
 Combination: TypeAlias = Literal["weighted sum", "worst"]
@@ -131,9 +136,18 @@ class DayProblem:
         return found
 
     @cached_property
-    def last_clock_night(self) -> int:
-        """The last night on which the body clock still matters; -1 when no round limits it."""
-        limited = [r.race_day - 1 for r in self.rounds if r.largest_clock_offset_h is not None]
+    def clock_counts(self) -> BoolArray:
+        """(days,) whether the body clock is followed on that night: before a race that limits it."""
+        counts = np.zeros(self.days, dtype=bool)
+        for each in self.rounds:
+            if each.largest_clock_offset_h is not None:
+                counts[max(each.race_day - CLOCK_DAYS, 0) : each.race_day] = True
+        return counts
+
+    @cached_property
+    def last_risk_night(self) -> int:
+        """The last night on which the class of the ascent still matters; -1 when no round limits it."""
+        limited = [r.race_day - 1 for r in self.rounds if r.highest_risk < HIGHEST_RISK_CLASS]
         return max(limited, default=-1)
 
     @cached_property
@@ -170,16 +184,21 @@ class DayProblem:
             cost += self.rates.travel_hour * float(self.hours[before, bed])
         return cost
 
-    def pieces(self, night: int, before: int, bed: int, lost: int) -> list[tuple[float, float]]:
-        """The air of the step to the morning after the night: (inspired oxygen [mmHg], hours) in order."""
+    def pieces(self, before: int, bed: int, lost: int, *, at_track: bool) -> list[tuple[float, float]]:
+        """The air of a step to the morning after the night: (inspired oxygen [mmHg], hours) in order."""
         here = self.beds[bed]
         tent = [(here.tent_po2_mmhg, here.tent_hours)] if here.tent_hours > 0.0 else []
         if self.same_place[before, bed]:
-            by_day = here.track_po2_mmhg if self.at_track[night, bed] else here.bed_po2_mmhg
+            by_day = here.track_po2_mmhg if at_track else here.bed_po2_mmhg
             return [(by_day, DAY_HOURS), (here.bed_po2_mmhg, NIGHT_HOURS - here.tent_hours), *tent]
         awake = (DAY_HOURS + NIGHT_HOURS) * (1 + lost) - here.tent_hours
         way = min(float(self.hours[before, bed]), awake)
         return [(float(self.way_po2_mmhg[before, bed]), way), (here.bed_po2_mmhg, awake - way), *tent]
+
+
+@lru_cache(maxsize=4096)
+def _target_of(po2_mmhg: float) -> float:
+    return float(ventilatory_target(po2_mmhg))
 
 
 class Steps:
@@ -191,18 +210,20 @@ class Steps:
 
     def state_after(self, state: FloatArray, night: int, before: int, bed: int, lost: int) -> FloatArray:
         """The state on the morning after; rises with the state before, which the search relies on."""
-        for target, rise, fall in self._pieces(night, before, bed, lost):
+        at_track = bool(self.problem.at_track[night, bed])
+        for target, rise, fall in self.pieces(before, bed, lost, at_track=at_track):
             gap = target - state
             state = state + np.where(gap > 0.0, rise, fall) * gap
         return state
 
-    def _pieces(self, night: int, before: int, bed: int, lost: int) -> list[tuple[float, float, float]]:
-        key = (before, bed, lost, bool(self.problem.at_track[night, bed]))
+    def pieces(self, before: int, bed: int, lost: int, *, at_track: bool) -> list[tuple[float, float, float]]:
+        """Target, rising and falling share of each piece of a step."""
+        key = (before, bed, lost, at_track)
         if key not in self._known:
-            pieces = [p for p in self.problem.pieces(night, before, bed, lost) if p[1] > 0.0]
+            pieces = [p for p in self.problem.pieces(before, bed, lost, at_track=at_track) if p[1] > 0.0]
             self._known[key] = [
                 (
-                    float(ventilatory_target(po2_mmhg)),
+                    _target_of(po2_mmhg),
                     -float(np.expm1(-hours / 24.0 / POPULATION.rise_time_d)),
                     -float(np.expm1(-hours / 24.0 / POPULATION.fall_time_d)),
                 )
@@ -260,7 +281,10 @@ def evaluate_plans(problem: DayProblem, plans: IntArray) -> PlanValues:
                 continue
             cost[who] += problem.step_cost(before, to, lost)
             state[who] = steps.state_after(state[who], night, before, to, lost)
-            offset[who] = offset_after(problem, offset[who], night, before, to, lost)
+            if problem.clock_counts[night]:
+                offset[who] = offset_after(problem, offset[who], night, before, to, lost)
+            else:
+                offset[who] = 0.0
             climbing[who], risk[who] = ascent_after(problem, climbing[who], risk[who], before, to)
         if problem.ascent_rule:
             feasible &= climbing <= MOST_NIGHTS_CLIMBING
@@ -302,7 +326,7 @@ def keeps_limits(
     if each.lowest_capacity_pct is not None:
         kept = kept & (capacity_pct >= each.lowest_capacity_pct)
     if each.largest_clock_offset_h is not None:
-        kept = kept & (np.abs(offset_h) <= each.largest_clock_offset_h + 1e-9)
+        kept = kept & (np.abs(offset_h) <= each.largest_clock_offset_h + CLOCK_SLACK_H)
     return kept
 
 

@@ -1,11 +1,12 @@
 """The season search: the whole trade-off between cost and benefit, exact under the day model.
 
-Dynamic programming over nights. A label is a partial plan: its cost, its benefit so far, its state of
-acclimatisation, its body-clock offset, its ascent. Labels of one bed on one night are compared, and one is
-dropped only if another can do everything that it can, at no more cost and no less benefit:
+Dynamic programming from gate to gate. A gate is a night that every plan spends at one place: between two of
+them the ways across are found once (`stretch`). A label is a partial plan up to a gate: its cost, its benefit
+so far, its state of acclimatisation, its body-clock offset, its ascent. Of the labels of one gate and bed one
+is dropped only if another can do everything that it can, at no more cost and no less benefit:
 
-1. The step of a day takes states to states without changing their order, and so does each later one: it is
-   x + r (t - x) with r the falling or the rising rate of that stretch, and the same t for both labels. Two
+1. A step takes states to states without changing their order, and so does each later one: it is a chain of
+   x + r (t - x) with r the falling or the rising share of that piece, and the same t for both labels. Two
    states stay apart by at least exp(-k / fast) and at most exp(-k / slow) of what they were apart, k days
    later, with the two time constants of the model.
 2. The benefit at a round rises with the state, with a slope between s_min and s_max (found on a fine grid,
@@ -14,11 +15,11 @@ dropped only if another can do everything that it can, at no more cost and no le
    give differs by at least l (x - y) and at most L (x - y) when x > y, where l and L are the weighted sums of
    s_min exp(-k / fast) and s_max exp(-k / slow) over the rounds ahead. Hence the label with benefit a and
    state x is no worse than the one with b and y in every continuation if a + l x >= b + l y and
-   a + L x >= b + L y.
-   When a round ahead has a floor, the state itself must be no lower: a + l x >= b + l y and x >= y.
+   a + L x >= b + L y. When a round ahead has a floor, the state itself must be no lower:
+   a + l x >= b + l y and x >= y.
 4. For the worst round, min(a, later) is no lower if a >= b and x >= y.
 5. Costs ahead are the same for both. Offset, climbing nights and class of the ascent decide what is allowed
-   later, so only labels that agree in them are compared; the offset only while a round ahead limits it.
+   later, so only labels that agree in them are compared; each only while a round ahead limits it.
 
 Nothing is rounded, so the result is the trade-off of all plans of the day model.
 """
@@ -33,27 +34,25 @@ import numpy as np
 
 from planner.checks import FloatArray
 from planner.errors import PlannerError
-from planner.physiology.illness import MOST_NIGHTS_CLIMBING
 from planner.physiology.population import POPULATION
 from planner.physiology.ventilation import ventilatory_target
 from planner.season.day_model import (
-    MOST_NIGHTS_LOST,
     ON_THE_WAY,
     BoolArray,
     DayProblem,
     DayRound,
     IntArray,
-    Steps,
-    ascent_after,
     keeps_limits,
-    offset_after,
 )
+from planner.season.moves import LOST, OFFSET_DIGITS, Moves
+from planner.season.stretch import Crossing, Entry, Ways
 
 GRID_STATES: Final = 801
 SLOPE_MARGIN: Final = 0.05
 # Labels are compared in blocks of this many, so that a comparison stays in the processor's cache.
 BLOCK: Final = 256
-OFFSET_DIGITS: Final = 6  # offsets that differ by less are one offset; rounding of sums differs in the 12th
+# Room for the rounding of sums when a cost is held against the largest one asked for.
+COST_SLACK: Final = 1e-9
 
 
 class SearchCancelledError(PlannerError):
@@ -75,7 +74,7 @@ class TradeOff:
 
 @dataclass(frozen=True)
 class _Labels:
-    """Partial plans that end in one bed on one night, with where each came from."""
+    """Partial plans that end in one bed on a gate's night, with the label and the way that each came by."""
 
     cost: FloatArray
     benefit: FloatArray
@@ -83,9 +82,9 @@ class _Labels:
     offset: FloatArray
     climbing: IntArray
     risk: IntArray
-    from_night: IntArray
     from_bed: IntArray
     from_label: IntArray
+    way: IntArray  # (n,) row of the gate's list of ways
 
     def __len__(self) -> int:
         return len(self.cost)
@@ -94,93 +93,176 @@ class _Labels:
         return _Labels(**{name: column[chosen] for name, column in vars(self).items()})
 
 
+@dataclass(frozen=True)
+class _Gate:
+    """The labels of one gate by bed, and the beds of the nights of each way that led to it."""
+
+    night: int
+    labels: dict[int, _Labels]
+    ways: IntArray  # (ways, nights since the gate before)
+
+
 def search(
     problem: DayProblem,
     *,
+    most_extra_cost: float | None = None,
     progress: Callable[[float], None] | None = None,
     cancelled: Callable[[], bool] | None = None,
 ) -> TradeOff:
-    """The whole trade-off of a season; empty when no plan keeps every limit (see `in_the_way`).
+    """The whole trade-off of a season; empty when no plan keeps every limit (see `obstacles`).
 
-    `progress` is told the share done after each night, `cancelled` asked before each.
+    `most_extra_cost` leaves out plans that cost more than that above the cheapest one without limits.
+    `progress` is told the share done after each gate, `cancelled` asked before each.
     Raises: SearchCancelledError when `cancelled` says so.
     """
-    run = _Run(problem)
-    for night in range(problem.days):
+    run = _Run(problem, most_extra_cost)
+    for night in gates(problem):
         if cancelled is not None and cancelled():
             raise SearchCancelledError("the search was stopped; nothing has been changed")
-        run.spend(night)
+        run.go_to(night)
         if progress is not None:
             progress((night + 1) / problem.days)
     return run.trade_off()
 
 
+def gates(problem: DayProblem) -> list[int]:
+    """The nights that every plan spends at one place (the only bed, or before a race), and the last."""
+    return [
+        night
+        for night in range(problem.days)
+        if night == problem.days - 1
+        or (
+            not problem.air_ok[night]
+            and (problem.allowed[night].sum() == 1 or night in problem.by_race_night)
+        )
+    ]
+
+
+def count_plans(problem: DayProblem) -> int:
+    """How many day-by-day plans the season has, counted exactly without going through them.
+
+    Plans that the limits of a round would refuse are counted too: full enumeration has to look at them.
+    """
+    allowed = Moves(problem).allowed
+    beds = range(len(problem.beds))
+    # Python's whole numbers: the counts go far beyond what an array holds.
+    counts: list[list[int]] = [[int(bed == problem.start_bed) for bed in beds]]
+    for night in range(problem.days):
+        here = [0] * len(problem.beds)
+        for lost in LOST:
+            if night - lost >= 0:
+                before = counts[night - lost]
+                for a, b in np.argwhere(allowed[night, lost]):
+                    here[b] += before[a]
+        counts.append(here)
+    return sum(counts[-1])
+
+
 class _Run:
-    def __init__(self, problem: DayProblem) -> None:
+    def __init__(self, problem: DayProblem, most_extra_cost: float | None) -> None:
         self.problem = problem
-        self.steps = Steps(problem)
+        self.moves = Moves(problem)
+        self.crossing = Crossing(self.moves)
         self.bounds = _SlopeBounds(problem)
         self.touched = 0
-        zero = np.zeros(1)
-        none = np.zeros(1, dtype=np.intp)
-        worst = problem.combination == "worst"
-        self.start = _Labels(
+        self.most_cost = np.inf
+        if most_extra_cost is not None:
+            self.most_cost = self._cheapest() + most_extra_cost + COST_SLACK
+        zero, none = np.zeros(1), np.zeros(1, dtype=np.intp)
+        start = _Labels(
             cost=zero,
-            benefit=np.full(1, np.inf) if worst else zero,
+            benefit=np.full(1, np.inf) if problem.combination == "worst" else zero,
             state=np.full(1, problem.start_state),
             offset=np.full(1, problem.start_offset_h),
             climbing=none,
             risk=none,
-            from_night=none - 1,
-            from_bed=none + problem.start_bed,
+            from_bed=none,
             from_label=none,
+            way=none,
         )
-        # labels[night][bed]; night -1 is the start.
-        self.labels: list[dict[int, _Labels]] = []
+        self.gates = [_Gate(-1, {problem.start_bed: start}, np.zeros((1, 0), dtype=np.intp))]
 
-    def before(self, night: int) -> dict[int, _Labels]:
-        return self.labels[night] if night >= 0 else {self.problem.start_bed: self.start}
+    def _cheapest(self) -> float:
+        """Cost of the cheapest plan when no round had a limit."""
+        return min(
+            (
+                float((self.moves.cost[lost, self.problem.start_bed] + self.moves.cheapest_to_go[lost])[b])
+                for lost in LOST
+                if lost < self.problem.days
+                for b in np.flatnonzero(self.moves.allowed[lost, lost, self.problem.start_bed])
+            ),
+            default=np.inf,
+        )
 
-    def spend(self, night: int) -> None:
-        """Make the labels of one night out of those of the nights before it."""
+    def go_to(self, night: int) -> None:
+        """Make the labels of a gate out of those of the gate before it."""
+        last = self.gates[-1]
+        ahead = bool(self.bounds.ahead[last.night + 1])
+        found: list[tuple[int, _Labels]] = []
+        rows: list[IntArray] = []
+        count = 0
+        for bed, labels in last.labels.items():
+            keys = _keys(labels, np.round(labels.offset, OFFSET_DIGITS))
+            for key in np.unique(keys):
+                group = np.flatnonzero(keys == key)
+                some = labels.taken(group)
+                entry = Entry(
+                    last.night,
+                    bed,
+                    float(some.offset[0]),
+                    int(some.climbing[0]),
+                    int(some.risk[0]),
+                    some.state,
+                )
+                ways = self.crossing.ways(
+                    entry,
+                    night,
+                    state_counts=ahead,
+                    most_cost=self.most_cost - float(some.cost.min()),
+                )
+                found += self._continued(entry, some, group, ways, count)
+                rows.append(ways.beds)
+                count += len(ways.beds)
         here: dict[int, _Labels] = {}
-        for bed in np.flatnonzero(self.problem.allowed[night]):
-            made = [
-                self._moved(night, before, int(bed), lost)
-                for lost in range(min(MOST_NIGHTS_LOST, night) + 1)
-                for before in self.before(night - 1 - lost)
-                if self.problem.may_change(night, before, int(bed), lost)
-            ]
-            if not made:
-                continue
-            labels = made[0] if len(made) == 1 else _joined(made)
-            self.touched += len(labels)
+        for bed in sorted({bed for bed, _ in found}):
+            labels = _joined([part for b, part in found if b == bed])
             labels = self._at_races(night, labels)
-            kept = self._undominated(night, labels)
-            if len(kept):
-                here[int(bed)] = labels.taken(kept)
-        self.labels.append(here)
+            affordable = labels.cost + self.moves.cheapest_to_go[night, bed] <= self.most_cost
+            labels = labels.taken(affordable)
+            clock, keeps = self.moves.clock_key(night, bed, labels.offset)
+            settled = np.where(clock == 0.0, 0.0, labels.offset)
+            labels = replace(labels, offset=settled).taken(keeps)
+            first, second = self.bounds.comparisons(night, labels.benefit, labels.state)
+            here[bed] = labels.taken(undominated(labels.cost, first, second, _keys(labels, clock[keeps])))
+        self.gates.append(_Gate(night, here, np.concatenate(rows) if rows else np.zeros((0, 0), np.intp)))
 
-    def _moved(self, night: int, before: int, bed: int, lost: int) -> _Labels:
-        problem = self.problem
-        old = self.before(night - 1 - lost)[before]
-        climbing, risk = ascent_after(problem, old.climbing, old.risk, before, bed)
-        if night <= problem.last_clock_night:
-            offset = offset_after(problem, old.offset, night, before, bed, lost)
-        else:
-            offset = np.zeros(len(old))
-        count = np.ones(len(old), dtype=np.intp)
-        return _Labels(
-            cost=old.cost + problem.step_cost(before, bed, lost),
-            benefit=old.benefit,
-            state=self.steps.state_after(old.state, night, before, bed, lost),
-            offset=offset,
-            climbing=climbing,
-            risk=risk,
-            from_night=count * (night - 1 - lost),
-            from_bed=count * before,
-            from_label=np.arange(len(old)),
-        )
+    def _continued(
+        self, entry: Entry, labels: _Labels, numbers: IntArray, ways: Ways, first_row: int
+    ) -> list[tuple[int, _Labels]]:
+        """Every label continued by every way, by the bed in which it ends."""
+        state = self.crossing.states_after(entry, ways, labels.state)
+        parts = []
+        for bed in np.unique(ways.bed):
+            chosen = np.flatnonzero(ways.bed == bed)
+            way, label = (i.reshape(-1) for i in np.meshgrid(chosen, np.arange(len(labels)), indexing="ij"))
+            self.touched += len(way)
+            parts.append(
+                (
+                    int(bed),
+                    _Labels(
+                        cost=labels.cost[label] + ways.cost[way],
+                        benefit=labels.benefit[label],
+                        state=state[way, label],
+                        offset=ways.offset_h[way],
+                        climbing=ways.climbing[way],
+                        risk=ways.risk[way],
+                        from_bed=np.full(len(way), entry.bed),
+                        from_label=numbers[label],
+                        way=first_row + way,
+                    ),
+                )
+            )
+        return parts
 
     def _at_races(self, night: int, labels: _Labels) -> _Labels:
         problem = self.problem
@@ -193,22 +275,16 @@ class _Run:
             else:
                 benefit = labels.benefit + each.weight * value
             labels = replace(labels, benefit=benefit).taken(kept)
-        if problem.ascent_rule:
-            return labels.taken(labels.climbing <= MOST_NIGHTS_CLIMBING)
+        if night >= problem.last_risk_night:
+            labels = replace(labels, risk=np.zeros_like(labels.risk))
+        if night + 1 >= problem.days or not problem.clock_counts[night + 1]:
+            labels = replace(labels, offset=np.zeros_like(labels.offset))
         return labels
-
-    def _undominated(self, night: int, labels: _Labels) -> IntArray:
-        first, second = self.bounds.comparisons(night, labels.benefit, labels.state)
-        key = (labels.climbing * 4 + labels.risk).astype(np.float64)
-        if night <= self.problem.last_clock_night:
-            _, code = np.unique(np.round(labels.offset, OFFSET_DIGITS), return_inverse=True)
-            key = key + 64.0 * code
-        return undominated(labels.cost, first, second, key)
 
     def trade_off(self) -> TradeOff:
         ends = [
             (float(cost), float(benefit), bed, i)
-            for bed, labels in self.labels[-1].items()
+            for bed, labels in self.gates[-1].labels.items()
             for i, (cost, benefit) in enumerate(zip(labels.cost, labels.benefit, strict=True))
         ]
         ends.sort(key=lambda e: (e[0], -e[1]))
@@ -218,21 +294,16 @@ class _Run:
                 curve.append(end)
         plans = np.full((len(curve), self.problem.days), ON_THE_WAY, dtype=np.intp)
         for row, (_, _, bed, i) in zip(plans, curve, strict=True):
-            night = self.problem.days - 1
-            while night >= 0:
-                row[night] = bed
-                labels = self.labels[night][bed]
-                night, bed, i = (
-                    int(labels.from_night[i]),
-                    int(labels.from_bed[i]),
-                    int(labels.from_label[i]),
-                )
+            for before, gate in zip(self.gates[-2::-1], self.gates[:0:-1], strict=True):
+                labels = gate.labels[bed]
+                row[before.night + 1 : gate.night + 1] = gate.ways[labels.way[i]]
+                bed, i = int(labels.from_bed[i]), int(labels.from_label[i])
         benefit = np.array([e[1] for e in curve])
         return TradeOff(
             np.array([e[0] for e in curve]),
             np.where(np.isinf(benefit), 0.0, benefit),
             plans,
-            self.touched,
+            self.touched + self.crossing.touched,
         )
 
 
@@ -244,24 +315,24 @@ class _SlopeBounds:
         self.lowest = np.zeros(problem.days)
         self.highest = np.zeros(problem.days)
         self.floor_ahead = np.zeros(problem.days, dtype=bool)
-        self.ahead = np.zeros(problem.days, dtype=bool)
+        # One more entry in front: `ahead[n + 1]` says whether the state matters after night n.
+        self.ahead = np.zeros(problem.days + 1, dtype=bool)
         fast = min(POPULATION.rise_time_d, POPULATION.fall_time_d)
         slow = max(POPULATION.rise_time_d, POPULATION.fall_time_d)
         states = np.linspace(0.0, _highest_state(problem), GRID_STATES)
         for each in problem.rounds:
             s_min, s_max = _slopes(each, states, problem.measure == "SpO2")
-            for night in range(min(each.race_day - 1, problem.days)):
-                days = each.race_day - 1 - night
-                self.lowest[night] += each.weight * s_min * np.exp(-days / fast)
-                self.highest[night] += each.weight * s_max * np.exp(-days / slow)
-                self.floor_ahead[night] |= each.has_floor
-                self.ahead[night] |= each.has_floor or each.weight > 0.0
+            days = each.race_day - 1 - np.arange(each.race_day - 1)
+            self.lowest[: each.race_day - 1] += each.weight * s_min * np.exp(-days / fast)
+            self.highest[: each.race_day - 1] += each.weight * s_max * np.exp(-days / slow)
+            self.floor_ahead[: each.race_day - 1] |= each.has_floor
+            self.ahead[: each.race_day] |= each.has_floor or each.weight > 0.0
 
     def comparisons(
         self, night: int, benefit: FloatArray, state: FloatArray
     ) -> tuple[FloatArray, FloatArray]:
         """The two figures in which a label must be no lower than another to make it superfluous."""
-        if not self.ahead[night]:
+        if not self.ahead[night + 1]:
             return benefit, benefit
         if self.worst:
             return benefit, state
@@ -291,51 +362,38 @@ def undominated(cost: FloatArray, first: FloatArray, second: FloatArray, key: Fl
     A label is beaten by one that costs no more and is no lower in both figures.
     """
     order = np.lexsort((-second, -first, cost))
-    kept = order[:0]
+    kept = [_undominated_of_one_key(order[key[order] == k], first, second) for k in np.unique(key)]
+    return np.concatenate(kept) if kept else order
+
+
+def _undominated_of_one_key(order: IntArray, first: FloatArray, second: FloatArray) -> IntArray:
+    kept: list[IntArray] = []
+    # The best of what is kept so far: falling in the first figure, rising in the second.
+    stair_first, stair_second = np.empty(0), np.empty(0)
     for start in range(0, len(order), BLOCK):
         block = order[start : start + BLOCK]
-        if len(kept):
-            # Sorted by cost, every label kept so far costs no more than those of this block.
-            beaten = (
-                (key[kept, None] == key[block])
-                & (first[kept, None] >= first[block])
-                & (second[kept, None] >= second[block])
-            ).any(axis=0)
-            block = block[~beaten]
-        within = (
-            (key[block, None] == key[block])
-            & (first[block, None] >= first[block])
-            & (second[block, None] >= second[block])
-        )
-        beaten = np.triu(within, 1).any(axis=0)
-        kept = np.concatenate([kept, block[~beaten]])
-    return kept
+        # Sorted by cost, every label kept so far costs no more than those of this block. The last step of the
+        # stair that is no lower in the first figure is the highest of them in the second.
+        step = np.searchsorted(-stair_first, -first[block], side="right") - 1
+        if len(stair_first):
+            block = block[(step < 0) | (stair_second[step] < second[block])]
+        within = (first[block, None] >= first[block]) & (second[block, None] >= second[block])
+        block = block[~np.triu(within, 1).any(axis=0)]
+        kept.append(block)
+        stair_first = np.concatenate([stair_first, first[block]])
+        stair_second = np.concatenate([stair_second, second[block]])
+        by_first = np.lexsort((-stair_second, -stair_first))
+        stair_first, stair_second = stair_first[by_first], stair_second[by_first]
+        rises = stair_second > np.concatenate([[-np.inf], np.maximum.accumulate(stair_second)[:-1]])
+        stair_first, stair_second = stair_first[rises], stair_second[rises]
+    return np.concatenate(kept) if kept else order
+
+
+def _keys(labels: _Labels, clock: FloatArray) -> FloatArray:
+    """One number for each combination of climbing nights, class of ascent and body clock."""
+    _, code = np.unique(clock, return_inverse=True)
+    return (labels.climbing * 4 + labels.risk + 64 * code).astype(np.float64)
 
 
 def _joined(parts: list[_Labels]) -> _Labels:
     return _Labels(**{name: np.concatenate([vars(p)[name] for p in parts]) for name in vars(parts[0])})
-
-
-def count_plans(problem: DayProblem) -> int:
-    """How many day-by-day plans the season has, counted exactly without going through them.
-
-    Plans that the limits of a round would refuse are counted too: full enumeration has to look at them.
-    """
-    counts: list[dict[int, int]] = []
-
-    def before(night: int) -> dict[int, int]:
-        return counts[night] if night >= 0 else {problem.start_bed: 1}
-
-    for night in range(problem.days):
-        here: dict[int, int] = {}
-        for bed in (int(b) for b in np.flatnonzero(problem.allowed[night])):
-            total = sum(
-                ways
-                for lost in range(min(MOST_NIGHTS_LOST, night) + 1)
-                for place, ways in before(night - 1 - lost).items()
-                if problem.may_change(night, place, bed, lost)
-            )
-            if total:
-                here[bed] = total
-        counts.append(here)
-    return sum(counts[-1].values())
