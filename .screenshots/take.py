@@ -1,7 +1,7 @@
 """Takes the pictures of the README: `.venv/bin/python .screenshots/take.py` (after `.ci/prepare --tests`).
 
-Starts the program on the demo season in a folder of its own, visits every page with the system's chromium,
-and writes `<page>.png` (laptop, light) and `<page>-phone.png` (telephone, dark) beside this file.
+Starts the program on the demo season in a folder of its own, visits its pages with the system's chromium, and
+writes `<page>.png` (laptop, light) and `<page>-phone.png` (telephone, dark) beside this file.
 """
 
 from __future__ import annotations
@@ -20,9 +20,11 @@ from pathlib import Path
 
 from playwright.sync_api import Browser, Page, sync_playwright
 
+from planner.ui.navigation import FIRST_PAGE
+
 HERE = Path(__file__).resolve().parent
-PAGES = tuple(sorted(path.stem for path in (HERE.parent / "pages").glob("*.py")))
-ON_A_PHONE = ("this_morning", "readings", "fluids", "driver")
+ON_A_LAPTOP = ("this_morning", "season", "driver")
+ON_A_PHONE = ("this_morning", "readings", "fluids")
 LAPTOP, PHONE = (1280, 960), (390, 844)
 FLAGS = ["--no-sandbox", "--disable-gpu", "--no-first-run", "--disable-background-networking"]
 STARTS_WITHIN_S = 60.0
@@ -66,7 +68,7 @@ def take(browser: Browser, address: str, stem: str, size: tuple[int, int], schem
     width, height = size
     context = browser.new_context(viewport={"width": width, "height": height}, color_scheme=scheme)
     page: Page = context.new_page()
-    page.goto(f"{address}/{stem.replace('_', '-')}")
+    page.goto(f"{address}/{'' if stem == FIRST_PAGE else stem.replace('_', '-')}")
     page.wait_for_selector(".p-foot", timeout=60_000)
     page.wait_for_timeout(SETTLES_MS)
     page.screenshot(path=HERE / name)
@@ -78,10 +80,10 @@ def main() -> None:
     executable = shutil.which("chromium") or shutil.which("chromium-browser")
     with running_demo() as address, sync_playwright() as playwright:
         browser = playwright.chromium.launch(executable_path=executable, args=FLAGS)
-        for stem in PAGES:
+        for stem in ON_A_LAPTOP:
             take(browser, address, stem, LAPTOP, "light", f"{stem}.png")
-            if stem in ON_A_PHONE:
-                take(browser, address, stem, PHONE, "dark", f"{stem}-phone.png")
+        for stem in ON_A_PHONE:
+            take(browser, address, stem, PHONE, "dark", f"{stem}-phone.png")
         browser.close()
 
 
