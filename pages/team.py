@@ -12,6 +12,7 @@ from planner.ui.page import Context, answer, end_page, line, start_page, you_for
 from planner.ui.team_forms import commitment_form, driver_form, place_form, round_form, session_form
 from planner.ui.team_records import RecordList, draw_records
 from planner.ui.team_settings import draw_limits, draw_store
+from planner.ui.text import literal
 from planner.wording import (
     DASH,
     clock,
@@ -118,7 +119,7 @@ def draw_rounds(ctx: Context) -> None:
 def draw_sessions(ctx: Context, given: Round, place: Place, sessions: list[Session]) -> None:
     """The sessions of one round, in the zone of its place."""
     zone = zone_name(place.zone, sessions[0].starts_at if sessions else ctx.now)
-    st.subheader(f"Sessions of {given.name}", anchor=False)
+    st.subheader(f"Sessions of {literal(given.name)}", anchor=False)
     draw_records(
         ctx,
         sessions,

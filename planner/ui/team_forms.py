@@ -22,6 +22,7 @@ from planner.season.model import (
 )
 from planner.services.typed import local_instant, typed_value
 from planner.ui.page import Context
+from planner.ui.text import literal
 from planner.units import from_house
 from planner.wording import unit_name
 
@@ -165,7 +166,7 @@ def session_form(
     )
     first, second, third = st.columns(3)
     day = first.date_input(
-        f"Day at {place.name}",
+        f"Day at {literal(place.name)}",
         start.date() if start else ctx.now.astimezone(zone).date(),
         format="YYYY-MM-DD",
     )

@@ -12,6 +12,7 @@ from planner.services.team import R, removed, save
 from planner.ui.errors import plain_errors
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import table
+from planner.ui.text import literal
 
 ADD = 0  # stands for "a new one" among the ids
 
@@ -76,7 +77,7 @@ def _draw_removed(ctx: Context, shown: RecordList[R], key: str) -> None:
         return
     with st.expander(f"Removed ({len(gone)}): can be put back"):
         for record in gone:
-            if st.button(f"Put back {record.name}", key=f"{key}_put_back_{record.id}"):
+            if st.button(f"Put back {literal(record.name)}", key=f"{key}_put_back_{record.id}"):
                 with plain_errors():
                     ctx.store.restore(shown.kind, record.id, by=ctx.who)
                     _done(key, f"Put back: {record.name}.")
