@@ -220,7 +220,7 @@ def test_limits_are_kept_and_carry_their_source(store: Store) -> None:
     assert not at.exception
     assert season_limits(store).lowest_race_spo2_pct == 92.0
     assert season_limits(store).largest_clock_offset_h == 2.0
-    assert season_limits(store).shortest_landing_to_session_h == 24.0
+    assert season_limits(store).shortest_landing_to_session_h == 15.0
 
 
 def test_an_empty_limit_is_no_limit_where_that_is_allowed(store: Store) -> None:

@@ -10,7 +10,7 @@ from planner.errors import InputError
 from planner.season.arrival_ways import TENT_OXYGEN_FRACTION, Gap, Kind, Sketch, gap_before, sketches
 from planner.season.constraints import Limits, bed_refused, local_date, worse
 from planner.season.evaluate import Costs, RoundOutlook, RoundPoint, Setting, costs, outlooks
-from planner.season.itinerary import Fixed, Itinerary, replace_between
+from planner.season.itinerary import BrokenAppointmentError, Fixed, Itinerary, replace_between
 from planner.season.nights import nights_of
 
 
@@ -69,7 +69,7 @@ def arrival_options(
     ways += [
         _built(sketch, gap, point, fixed, setting) for sketch in sketches(gap, point, setting, lower_bed_m)
     ]
-    ways = _distinct(ways)
+    ways = _distinct(ways, gap, point, setting)
     whole = [w.itinerary for w in ways if w.itinerary is not None]
     given = iter(outlooks(whole, [point], setting))
     options = [_judged(s, next(given)[0] if s.itinerary else None, gap, point, setting, limits) for s in ways]
@@ -91,20 +91,24 @@ def _built(sketch: Sketch, gap: Gap, point: RoundPoint, fixed: Sequence[Fixed], 
 
 
 def _sentence(error: InputError) -> str:
+    if isinstance(error, BrokenAppointmentError):
+        return error.sentence
     return f"{error.field[:1].upper()}{error.field[1:]}: possible is {error.expected}."
 
 
-def _distinct(sketches: list[Sketch]) -> list[Sketch]:
-    """Drop a sketch whose course is that of an earlier one, stay by stay."""
-    seen: set[tuple[object, ...]] = set()
+def _distinct(ways: list[Sketch], gap: Gap, point: RoundPoint, setting: Setting) -> list[Sketch]:
+    """Drop a way whose nights are those of an earlier one, and all but the first impossible one of a kind."""
+    seen: set[object] = set()
     kept = []
-    for sketch in sketches:
-        if sketch.itinerary is not None:
-            course = tuple(replace(entry, id=0) for entry in sketch.itinerary.entries)
-            if course in seen:
-                continue
-            seen.add(course)
-        kept.append(sketch)
+    for way in ways:
+        if way.itinerary is None:
+            mark: object = way.kind
+        else:
+            nights = nights_of(way.itinerary, setting.places, gap.free_from, point.race_at)
+            mark = tuple((night.evening, night.place_id, night.sleeping_m) for night in nights)
+        if mark not in seen:
+            kept.append(way)
+        seen.add(mark)
     return kept
 
 

@@ -35,11 +35,16 @@ DECENT_FROM_H: Final = 6
 DECENT_TO_H: Final = 23
 # Days before the first session on which arriving is tried, besides the earliest possible one: judgement.
 DAYS_BEFORE: Final = (1, 2, 3, 4, 5, 6, 7, 10, 14, 17, 21)
+LONGEST_WAIT_DAYS: Final = 3  # nobody waits longer where the appointment before was, but goes home: judgement
 THE_MORNING_ITSELF: Final = timedelta(hours=4)  # arrival before the first session
 # Half-way: beds at this share of the venue's bed elevation, and this many places: judgement.
 HALF_WAY_SHARE: Final = (0.35, 0.95)
 HALF_WAY_PLACES: Final = 2
+# On the way is what makes the journey no longer than this many times the straight one, and some: judgement.
+LARGEST_DETOUR: Final = 1.5
+SMALLEST_DETOUR_KM: Final = 800.0
 LEAST_HALF_WAY_NIGHTS: Final = 2
+HALF_WAY_NIGHTS: Final = 3  # when there is time
 # A tent night when nothing else is agreed: judgement. A physician's note allows it, and may allow less.
 TENT_OXYGEN_FRACTION: Final = 0.16
 TENT_HOURS_PER_NIGHT: Final = 9.0
@@ -90,7 +95,7 @@ def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], 
         free_from = _next_at(bound.ends_at, EARLIEST_DEPARTURE, venue)
         # The plan may already leave on the evening before; what is planned can be kept.
         start = base.index_at(bound.ends_at - timedelta(minutes=1))
-        if start is not None and base.entries[start].depart_at < free_from:
+        if start is not None and base.entries[start].depart_at <= free_from:
             free_from = max(bound.ends_at, base.entries[start].depart_at - timedelta(minutes=1))
     entry = base.entries[start] if start is not None else None
     if not isinstance(entry, Stay) or free_from >= point.first_session_at:
@@ -123,7 +128,9 @@ def sketches(gap: Gap, point: RoundPoint, setting: Setting, lower_bed_m: float |
     venue, home = setting.places[point.place_id], setting.home
     first_day = local_date(point.first_session_at, venue)
     morning = Visit(venue.id, point.first_session_at - THE_MORNING_ITSELF)
-    yield Sketch("the morning itself", "arrive on the morning of the first session", (morning,))
+    home_first = (_via(gap, home, venue, first_day, setting)[0], morning)
+    late = home_first if _home_for_a_night(home_first, setting) else (morning,)
+    yield Sketch("the morning itself", "arrive on the morning of the first session", late)
     earliest = gap.free_from + timedelta(hours=setting.times.between(gap.place.id, venue.id).hours)
     days = [first_day - timedelta(days=n) for n in DAYS_BEFORE]
     days = [d for d in days if d >= local_date(earliest, venue)]
@@ -141,7 +148,8 @@ def sketches(gap: Gap, point: RoundPoint, setting: Setting, lower_bed_m: float |
                 (_arrival(gap.place, venue, day, earliest, setting),),
             )
             continue
-        yield Sketch(kind, f"arrive {words}{wait}", (_arrival(gap.place, venue, day, earliest, setting),))
+        if not wait or (day - early).days <= LONGEST_WAIT_DAYS:
+            yield Sketch(kind, f"arrive {words}{wait}", (_arrival(gap.place, venue, day, earliest, setting),))
         if gap.place.id != home.id:
             yield Sketch("home first", f"home first, arrive {words}", _via(gap, home, venue, day, setting))
     yield from _half_way(gap, venue, first_day, setting)
@@ -156,23 +164,46 @@ def _half_way(gap: Gap, venue: Place, first_day: date, setting: Setting) -> Iter
         for p in setting.places.values()
         if low <= p.bed_elevation_m <= high and p.id not in (gap.place.id, venue.id, setting.home.id)
     ]
+    places = [p for p in places if _is_on_the_way(gap.place, p, venue)]
     places.sort(key=lambda p: _detour_km(gap.place, p, venue))
     if not places:
-        yield Sketch(
-            "half-way stop",
-            "stop half-way",
-            why=f"No place is known with beds between {low:.0f} and {high:.0f} m.",
-        )
-    for place in places[:HALF_WAY_PLACES]:
-        soonest = gap.free_from + timedelta(hours=setting.times.between(gap.place.id, place.id).hours)
-        stop = _arrival(gap.place, place, local_date(soonest, place), soonest, setting)
-        for days in (1, 2, 3):
-            there = _arrival(place, venue, first_day - timedelta(days=days), None, setting)
-            nights = (local_date(there.arrive_at, venue) - local_date(stop.arrive_at, place)).days
-            if nights >= LEAST_HALF_WAY_NIGHTS:
-                words = _days_before(first_day, first_day - timedelta(days=days))
-                title = f"stop half-way in {place.name}, arrive {words}"
-                yield Sketch("half-way stop", title, (stop, there))
+        why = f"No place with beds between {low:.0f} and {high:.0f} m is known that lies on the way."
+        yield Sketch("half-way stop", "stop half-way", why=why)
+    found = [
+        sketch
+        for place in places[:HALF_WAY_PLACES]
+        for days in (1, 2, 3)
+        if (sketch := _stop(gap, place, venue, first_day, days, setting)) is not None
+    ]
+    if places and not found:
+        why = f"The time since {gap.since} leaves no {LEAST_HALF_WAY_NIGHTS} nights on the way."
+        yield Sketch("half-way stop", f"stop half-way in {places[0].name}", why=why)
+    yield from found
+
+
+def _stop(
+    gap: Gap, place: Place, venue: Place, first_day: date, days: int, setting: Setting
+) -> Sketch | None:
+    """A few nights half-way, home before them when there is time; None when there is none for the stop."""
+    there = _arrival(place, venue, first_day - timedelta(days=days), None, setting)
+    last_day = local_date(there.arrive_at, venue)
+    soonest = gap.free_from + timedelta(hours=setting.times.between(gap.place.id, place.id).hours)
+    stop = _arrival(gap.place, place, local_date(soonest, place), soonest, setting)
+    if (last_day - local_date(stop.arrive_at, place)).days < LEAST_HALF_WAY_NIGHTS:
+        return None
+    title = f"stop half-way in {place.name}, arrive {_days_before(first_day, last_day)}"
+    home_first = _via(gap, setting.home, place, last_day - timedelta(days=HALF_WAY_NIGHTS), setting)
+    if _home_for_a_night(home_first, setting):
+        on_the_way = _is_on_the_way(setting.home, place, venue)
+        return Sketch("half-way stop", title, (*home_first, there)) if on_the_way else None
+    return Sketch("half-way stop", title, (stop, there))
+
+
+def _home_for_a_night(visits: tuple[Visit, ...], setting: Setting) -> bool:
+    """Whether a way that leads home first leaves at least a night there."""
+    home, after = visits[0], visits[1]
+    leaves = after.arrive_at - timedelta(hours=setting.times.between(home.place_id, after.place_id).hours)
+    return local_date(leaves, setting.home) > local_date(home.arrive_at, setting.home)
 
 
 def _tents(gap: Gap, venue: Place, first_day: date, setting: Setting) -> Iterator[Sketch]:
@@ -245,6 +276,11 @@ def _next_at(after: datetime, wall: time, place: Place) -> datetime:
     day = after.astimezone(zone).date()
     candidates = [datetime.combine(day + timedelta(days=i), wall, zone) for i in (0, 1)]
     return next(c for c in candidates if c >= after).astimezone(ZoneInfo("UTC"))
+
+
+def _is_on_the_way(start: Place, stop: Place, end: Place) -> bool:
+    longest_km = LARGEST_DETOUR * _detour_km(start, end, end) + SMALLEST_DETOUR_KM
+    return _detour_km(start, stop, end) <= longest_km
 
 
 def _detour_km(start: Place, stop: Place, end: Place) -> float:

@@ -21,6 +21,14 @@ from planner.season.travel import LegTimes
 UTC: Final = ZoneInfo("UTC")
 
 
+class BrokenAppointmentError(InputError):
+    """A change that would make the driver miss a fixed appointment; `sentence` says which."""
+
+    def __init__(self, sentence: str) -> None:
+        self.sentence = sentence
+        super().__init__("itinerary", "this change", f"no broken appointment: {sentence}")
+
+
 @dataclass(frozen=True)
 class Fixed:
     """Where the driver has to be, and when: the sessions of a round or a commitment."""
@@ -343,7 +351,7 @@ def _spliced(
     already = set(broken(itinerary, fixed, times.places))
     for sentence in broken(new, fixed, times.places):
         if sentence not in already:
-            raise InputError("itinerary", "this change", f"no broken appointment: {sentence}")
+            raise BrokenAppointmentError(sentence)
     return new
 
 
