@@ -2,6 +2,17 @@
 
 from __future__ import annotations
 
+from typing import Final
+
+LONGEST_SHOWN: Final = 80
+
+
+def _shown(value: object) -> str:
+    """The value on one line; a text is cut where it would drown the rest of the message."""
+    if isinstance(value, str) and len(value) > LONGEST_SHOWN:
+        return repr(f"{value[:LONGEST_SHOWN]}…")
+    return repr(value)
+
 
 class PlannerError(Exception):
     """Root of all errors that a user may see; its text is one plain line."""
@@ -14,7 +25,7 @@ class InputError(PlannerError):
         self.field = field
         self.value = value
         self.expected = expected
-        super().__init__(f"{field}: {value!r} cannot be used, expected {expected}")
+        super().__init__(f"{field}: {_shown(value)} cannot be used, expected {expected}")
 
 
 class RefusedLineError(InputError):
@@ -24,7 +35,7 @@ class RefusedLineError(InputError):
         super().__init__(column, value, expected)
         self.file = file
         self.line = line
-        self.args = (f"{file}, line {line}, column {column}: {value!r} refused, expected {expected}",)
+        self.args = (f"{file}, line {line}, column {column}: {_shown(value)} refused, expected {expected}",)
 
 
 class NotFoundError(PlannerError):

@@ -81,3 +81,9 @@ def test_the_key_of_a_quantity_is_its_name_and_its_range_is_one() -> None:
         assert quantity.low < quantity.high
         assert quantity.unit
         assert quantity.meaning
+
+
+def test_a_long_text_is_cut_in_the_message() -> None:
+    error = InputError("note", "y" * 500, "less")
+    assert str(error) == f"note: '{'y' * 80}…' cannot be used, expected less"
+    assert error.value == "y" * 500

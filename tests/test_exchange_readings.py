@@ -170,6 +170,14 @@ def test_a_wall_clock_time_that_fits_two_stays_needs_its_place() -> None:
         raise result.refused[0]
 
 
+def test_a_file_of_faults_is_refused_as_a_whole(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("planner.exchange.kinds.MOST_FAULTS", 4)
+    bad = "Nobody,Plateau,2026-06-05 07:12,0.9\n"
+    assert len(parsed(f"{HEADER}\n{bad * 2}").refused) == 4
+    with pytest.raises(RefusedLineError, match="line 4, column file: 'more than 4 faults' refused"):
+        parsed(f"{HEADER}\n{bad * 3}")
+
+
 def test_a_reading_may_lie_a_day_ahead_but_no_more() -> None:
     line = "Ada,Plateau,{},93\n"
     assert parsed(f"{HEADER}\n" + line.format("2026-06-07 07:40")).refused == ()

@@ -47,6 +47,7 @@ PLAIN = [("Ünä", "61.5", "a"), ("Bo", "70", "")]
         ("comments", "# made up\nname,mass_kg,note\n# one\nÜnä,61.5,a\n#,two\nBo,70,\n".encode()),
         ("quoted", '"name","mass_kg","note"\n"Ünä","61.5","a"\n"Bo","70",""\n'.encode()),
         ("short lines", "name,mass_kg,note\nÜnä,61.5,a\nBo,70\n".encode()),
+        ("told separator", "sep=;\r\nname;mass_kg;note\r\nÜnä;61.5;a\r\nBo;70;\r\n".encode()),
         ("unknown column", "name,shoe,mass_kg,note\nÜnä,38,61.5,a\nBo,44,70,\n".encode()),
     ],
 )
@@ -62,6 +63,9 @@ def test_says_what_it_ignored_and_what_it_guessed() -> None:
     )
     assert "Windows-1252" in read("name,mass_kg\nZoë,2\n".encode("cp1252")).notes[0]
     assert read("name,mass_kg\nZoë,2\n".encode()).notes == ()
+    assert read(b"# made up\nname,mass_kg\n#7 Ana,2\n# one\nBo,3\n").notes == (
+        "lines that start with # passed over as comments: 2",
+    )
 
 
 def test_counts_lines_as_an_editor_shows_them() -> None:
@@ -98,6 +102,7 @@ def test_decimal_commas_need_another_separator() -> None:
             b"PK\x03\x04\x00\x00a workbook",
             "column file: 'PK.* refused, expected a text file: save the sheet as CSV",
         ),
+        (b"x" * 200_000, r"column header: 'x{80}' refused, expected a header line"),
         (b"name,mass_kg\n\x81\xff\x8d,2\n", "column file: .* refused, expected a text file"),
     ],
 )
@@ -105,6 +110,13 @@ def test_refuses_a_file_as_a_whole(data: bytes, message: str) -> None:
     with pytest.raises(RefusedLineError, match=message) as refusal:
         read(data)
     assert "\n" not in str(refusal.value)
+
+
+def test_refuses_a_file_that_does_not_end(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("planner.exchange.tables.MOST_LINES", 3)
+    assert len(read(b"name,mass_kg\n" + b"a,1\n" * 3).rows) == 3
+    with pytest.raises(RefusedLineError, match=r"line 5, column file: .* at most 3 lines"):
+        read(b"name,mass_kg\n" + b"a,1\n" * 4)
 
 
 def test_refuses_single_lines_and_reads_on() -> None:

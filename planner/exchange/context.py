@@ -6,11 +6,12 @@ import unicodedata
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime
-from functools import cached_property
+from functools import cached_property, lru_cache
 
 from planner.season.model import Driver, Place, Round, Session, Stay
 
 
+@lru_cache(maxsize=4096)  # the cells of a long file hold the same few names over and over
 def folded(name: str) -> str:
     """Return a name as it is compared: case, spacing and the way accents are composed do not matter."""
     return " ".join(unicodedata.normalize("NFC", name).split()).casefold()

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
-from typing import Generic, TypeVar
+from typing import Final, Generic, TypeVar
 
 from planner.errors import InputError, RefusedLineError
 from planner.exchange.context import FileContext
@@ -12,6 +12,9 @@ from planner.exchange.lines import Line
 from planner.exchange.tables import Cell, Column, read_table, write_table
 
 R = TypeVar("R")
+
+# So many faults are no slips of typing but another kind of file (judgement).
+MOST_FAULTS: Final = 50_000
 
 
 @dataclass(frozen=True)
@@ -42,7 +45,8 @@ class Parsed(Generic[R]):
 def read_records(kind: FileKind[R], data: bytes, file: str, context: FileContext) -> Parsed[R]:
     """Read a file of one kind: good lines become records, of the others every fault is given.
 
-    Raises: RefusedLineError when the file as a whole cannot be used (see tables.read_table).
+    Raises: RefusedLineError when the file as a whole cannot be used (see tables.read_table), or has more than
+    MOST_FAULTS.
     """
     table = read_table(data, file, kind.columns)
     records: list[R] = []
@@ -58,6 +62,9 @@ def read_records(kind: FileKind[R], data: bytes, file: str, context: FileContext
         line.note(kind.problems(record))
         if line.faults:
             refused += sorted(line.faults, key=lambda fault: order[fault.field])
+            if len(refused) > MOST_FAULTS:
+                expected = f"a file of {kind.name}; put the first faults right, the others may be like them"
+                raise RefusedLineError(file, row.line, "file", f"more than {MOST_FAULTS} faults", expected)
         else:
             records.append(record)
             lines.append(row.line)

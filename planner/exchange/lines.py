@@ -15,6 +15,7 @@ from planner.exchange.times import read_date, read_instant
 
 NO_ZONE: Final = ""  # no place tells the zone of this line: its times need their offset
 _NUMBER: Final = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d{1,3})?", re.ASCII | re.IGNORECASE)
+_WHOLE: Final = re.compile(r"-?\d{1,9}", re.ASCII)
 _NUMBER_AHEAD: Final = re.compile(r"[+-]?\d+([.,]\d+)?(?=\s*[^\d\s.,])", re.ASCII)
 _UNREAD: Final = datetime(1970, 1, 1, tzinfo=UTC)  # stands in for a time that was refused
 _FIRST_MEASUREMENT: Final = datetime(2000, 1, 1, tzinfo=UTC)
@@ -89,7 +90,7 @@ class Line:
         """Return the whole number in the cell, None if it is empty."""
 
         def read(cell: str) -> int:
-            if not re.fullmatch(r"-?\d{1,9}", cell, re.ASCII):
+            if not _WHOLE.fullmatch(cell):
                 raise InputError(column, cell, "a whole number")
             return int(cell)
 

@@ -1,8 +1,9 @@
 """CSV: tolerant reading, strict writing. Bytes <-> rows of text; what the text means is the kinds' business.
 
 Read: UTF-8 with or without a byte-order mark, UTF-16 with one, Windows-1252 as the last resort (and said so);
-comma, semicolon or tab; any line ending; lines that start with # are comments. Written: UTF-8 with a
-byte-order mark (a spreadsheet would otherwise take it for Windows-1252), comma, decimal point, line feed.
+comma, semicolon or tab; any line ending; lines that start with # are comments, and so is a first line sep=;
+that tells a spreadsheet the separator. Written: UTF-8 with a byte-order mark (a spreadsheet would otherwise
+take it for Windows-1252), comma, decimal point, line feed.
 """
 
 from __future__ import annotations
@@ -23,7 +24,10 @@ Cell: TypeAlias = str | float | bool | date | datetime | None
 SEPARATORS: Final = (",", ";", "\t")
 # A spreadsheet takes a cell that starts with one of these for a formula; # would be read back as a comment.
 _UNSAFE_START: Final = re.compile(r"'*[=+\-@\t#]")
+_SEPARATOR_HINT: Final = re.compile(r"sep=.?\s*", re.IGNORECASE)
 _HEADER: Final = "header"
+# More than a team writes in many seasons; memory and patience end somewhere above (judgement).
+MOST_LINES: Final = 300_000
 
 
 @dataclass(frozen=True)
@@ -61,6 +65,7 @@ class _Lines:
         self._lines = io.StringIO(text, newline="")
         self.number = 0
         self.first_of_record = 0
+        self.comments = 0
         self._record_open = False
 
     def begin_record(self) -> None:
@@ -73,7 +78,10 @@ class _Lines:
         for line in self._lines:
             self.number += 1
             if not self._record_open:
-                if line.startswith("#") or not line.strip():
+                if line.startswith("#"):
+                    self.comments += 1
+                    continue
+                if not line.strip() or (self.number == 1 and _SEPARATOR_HINT.fullmatch(line)):
                     continue
                 self._record_open = True
                 self.first_of_record = self.number
@@ -85,7 +93,7 @@ def read_table(data: bytes, file: str, columns: Sequence[Column]) -> Table:
     """Read the bytes of a CSV file; `columns` are those that this kind of file has.
 
     Raises: RefusedLineError when the file as a whole cannot be used: no text, no header, a required column
-    missing or a column given twice. Single faulty lines are returned in `refused` instead.
+    missing, a column given twice, more than MOST_LINES. Single faulty lines are returned in `refused` instead.
     """
     text, notes = _decoded(data, file)
     lines = _Lines(text)
@@ -93,6 +101,7 @@ def read_table(data: bytes, file: str, columns: Sequence[Column]) -> Table:
     present, ignored = _present_columns(names, lines.first_of_record, file, columns)
     if ignored:
         notes = (*notes, f"columns not known here and ignored: {', '.join(ignored)}")
+    comments_above = lines.comments
     rows: list[Row] = []
     refused: list[RefusedLineError] = []
     reader = csv.reader(lines, delimiter=separator, strict=True)
@@ -113,6 +122,12 @@ def read_table(data: bytes, file: str, columns: Sequence[Column]) -> Table:
         cells += [""] * (len(names) - len(cells))
         by_name = {name: cells[position] for position, name in present.items()}
         rows.append(Row(lines.first_of_record, by_name))
+        if len(rows) > MOST_LINES:
+            expected = f"at most {MOST_LINES} lines: split it into several files"
+            raise RefusedLineError(file, lines.first_of_record, "file", "more lines", expected)
+    passed_over = lines.comments - comments_above
+    if passed_over:  # said, because a name could begin with # as well
+        notes = (*notes, f"lines that start with # passed over as comments: {passed_over}")
     return Table(tuple(rows), tuple(refused), separator != ",", notes)
 
 
@@ -198,7 +213,10 @@ def _header(lines: _Lines, file: str, columns: Sequence[Column]) -> tuple[str, l
 
 
 def _split_header(line: str, separator: str) -> list[str]:
-    cells = next(csv.reader([line], delimiter=separator), [])
+    try:
+        cells = next(csv.reader([line], delimiter=separator), [])
+    except csv.Error:  # a cell longer than the reader takes: this is no header
+        return []
     names = [re.sub(r"[\s\-]+", "_", cell.strip().lower()) for cell in cells]
     while names and not names[-1]:  # a spreadsheet leaves empty cells at the end
         names.pop()

@@ -60,7 +60,7 @@ def read_date(text: str) -> date:
 
 def _parsed(text: str) -> datetime | None:
     iso = _ISO.fullmatch(text)
-    day_first = _DAY_FIRST.fullmatch(text)
+    day_first = None if iso else _DAY_FIRST.fullmatch(text)
     try:
         if iso:
             offset = (iso["offset"] or "").upper()
