@@ -93,7 +93,7 @@ def read_table(data: bytes, file: str, columns: Sequence[Column]) -> Table:
     """Read the bytes of a CSV file; `columns` are those that this kind of file has.
 
     Raises: RefusedLineError when the file as a whole cannot be used: no text, no header, a required column
-    missing, a column given twice, more than MOST_LINES. Single faulty lines are returned in `refused` instead.
+    missing or given twice, more than MOST_LINES. Single faulty lines are returned in `refused` instead.
     """
     text, notes = _decoded(data, file)
     lines = _Lines(text)
