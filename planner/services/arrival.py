@@ -1,0 +1,191 @@
+"""How should this driver reach this round? The ways to it, ranked by what the coach asks."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from datetime import datetime
+from typing import Final, Literal, TypeAlias
+
+from planner.errors import InputError, NotFoundError
+from planner.season.arrival import Option, arrival_options
+from planner.season.arrival_ways import Gap, gap_before
+from planner.season.constraints import Limits
+from planner.season.evaluate import RoundPoint, Setting, round_point
+from planner.season.itinerary import Fixed, Itinerary, ends_at, fixed_points, starts_at
+from planner.season.model import Driver, Leg, Place, Round, Stay
+from planner.season.travel import LegTimes
+from planner.services.driver import driver_view
+from planner.services.limits import season_limits
+from planner.services.season import Calendar, read_calendar
+from planner.services.workspace import now
+from planner.store.store import Store
+from planner.wording import day_and_clock
+
+Order: TypeAlias = Literal[
+    "fewest nights away", "fewest flights", "least travel", "most SpO2 on race morning"
+]
+
+ORDERS: Final[tuple[Order, ...]] = (
+    "fewest nights away",
+    "fewest flights",
+    "least travel",
+    "most SpO2 on race morning",
+)
+ORDER_SETTING: Final = "order of the ways to a round"
+
+
+@dataclass(frozen=True)
+class Arrival:
+    """Every way for one driver to one round, the best first, as it stood when it was worked out."""
+
+    calendar: Calendar
+    driver: Driver
+    round: Round
+    point: RoundPoint
+    fixed: tuple[Fixed, ...]
+    setting: Setting
+    gap: Gap
+    limits: Limits
+    order: Order
+    now: datetime
+    options: tuple[Option, ...]
+
+    @property
+    def venue(self) -> Place:
+        """Where the round is held."""
+        return self.setting.places[self.point.place_id]
+
+    @property
+    def in_hindsight(self) -> bool:
+        """Whether the round has begun, so that a choice corrects what is past."""
+        return self.point.first_session_at <= self.now
+
+
+def arrival(
+    store: Store,
+    driver: Driver,
+    given: Round,
+    *,
+    limits: Limits | None = None,
+    order: Order | None = None,
+    lower_bed_m: float | None = None,
+) -> Arrival:
+    """Work out every way to a round; limits and order are the kept ones unless others are given.
+
+    Raises: InputError when the driver has no free time before the round.
+    """
+    calendar, at = read_calendar(store), now(store)
+    point = _point(calendar, given)
+    fixed = tuple(_fixed(calendar, driver))
+    setting = Setting(
+        driver=driver,
+        places=calendar.places,
+        times=LegTimes(calendar.places, calendar.legs),
+        track_days=calendar.days_at_the_track,
+        pressures=calendar.pressures,
+        person=driver_view(store, calendar, driver, at).person,
+    )
+    itinerary = calendar.itinerary_of(driver)
+    asked = season_limits(store) if limits is None else limits
+    by = kept_order(store) if order is None else order
+    options = arrival_options(itinerary, point, fixed, setting, asked, lower_bed_m=lower_bed_m)
+    if point.first_session_at > at:
+        options = [_not_in_the_past(each, itinerary, at, setting.home.zone) for each in options]
+    return Arrival(
+        calendar=calendar,
+        driver=driver,
+        round=given,
+        point=point,
+        fixed=fixed,
+        setting=setting,
+        gap=gap_before(itinerary, point, fixed, setting),
+        limits=asked,
+        order=by,
+        now=at,
+        options=tuple(sorted(options, key=lambda option: _rank(option, by))),
+    )
+
+
+def kept_order(store: Store) -> Order:
+    """What ranks the ways that keep every limit, as the coach set it or by default."""
+    kept = store.setting(ORDER_SETTING)
+    return next((order for order in ORDERS if order == kept), ORDERS[0])
+
+
+def next_high_round(calendar: Calendar, at: datetime) -> Round | None:
+    """The high round that comes next, else the last one of the season; None when none is high."""
+    high = [each for each in calendar.season_at(at) if calendar.is_high(each)]
+    return next((each for each in high if calendar.starts_at(each) > at), high[-1] if high else None)
+
+
+def find_round(calendar: Calendar, asked: str, at: datetime) -> Round:
+    """The round of that number, name, or beginning of a name; of several seasons the present one first.
+
+    Raises: NotFoundError when there is none; InputError when a beginning fits several.
+    """
+    wanted = " ".join(asked.split()).casefold()
+    for rounds in (calendar.season_at(at), calendar.rounds):
+        exact = [each for each in rounds if wanted in (str(each.number), each.name.casefold())]
+        found = exact or [each for each in rounds if wanted and each.name.casefold().startswith(wanted)]
+        if len(found) > 1:
+            raise InputError("ROUND", asked, f"one round; it fits {', '.join(each.name for each in found)}")
+        if found:
+            return found[0]
+    raise NotFoundError(f"there is no round {asked!r}; rounds: {', '.join(r.name for r in calendar.rounds)}")
+
+
+def first_change_at(old: Itinerary, new: Itinerary) -> datetime | None:
+    """The first instant at which the second itinerary leaves the first; None when they are one."""
+    for before, after in zip(old.entries, new.entries, strict=False):
+        if _without_end(before) != _without_end(after):
+            return min(starts_at(before), starts_at(after))
+        if ends_at(before) != ends_at(after):
+            return min(ends_at(before), ends_at(after))
+    longer = max(old.entries, new.entries, key=len)
+    shorter = min(len(old.entries), len(new.entries))
+    return starts_at(longer[shorter]) if len(longer) > shorter else None
+
+
+def _without_end(entry: Stay | Leg) -> Stay | Leg:
+    """An entry as it stands at its beginning."""
+    if isinstance(entry, Stay):
+        return replace(entry, depart_at=entry.arrive_at, id=0)
+    return replace(entry, arrive_at=entry.depart_at, id=0)
+
+
+def _point(calendar: Calendar, given: Round) -> RoundPoint:
+    place = calendar.place_of(given)
+    return round_point(
+        given.id, given.name, place, calendar.starts_at(given), calendar.race_of(given).starts_at
+    )
+
+
+def _fixed(calendar: Calendar, driver: Driver) -> list[Fixed]:
+    sessions = [session for each in calendar.sessions.values() for session in each]
+    return fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id)
+
+
+def _not_in_the_past(option: Option, planned: Itinerary, at: datetime, zone: str) -> Option:
+    """The option, refused when it would have had to begin before now."""
+    if option.itinerary is None:
+        return option
+    parts_at = first_change_at(planned, option.itinerary) if planned.entries else None
+    if parts_at is None or parts_at >= at:
+        return option
+    words = f"It leaves the present plan on {day_and_clock(parts_at, zone)}, which is past."
+    return replace(option, why=(*option.why, words))
+
+
+def _rank(option: Option, order: Order) -> tuple[int, float]:
+    """Feasible ones by the coach's order, then the others; what is equal stays as it was ranked before."""
+    if option.costs is None or option.outlook is None:
+        return 2, 0.0
+    if not option.feasible:
+        return 1, 0.0
+    value: dict[Order, float] = {
+        "fewest nights away": option.costs.nights_away,
+        "fewest flights": option.costs.flights,
+        "least travel": option.costs.travel_h,
+        "most SpO2 on race morning": -option.outlook.race_spo2_pct.mean,
+    }
+    return 0, value[order]
