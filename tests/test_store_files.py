@@ -13,7 +13,7 @@ from store_records import BY, HIGH, HOME, at, content, keep_every_kind, some_rea
 
 from planner.errors import StoreError
 from planner.monitoring.model import Reading
-from planner.season.model import Place
+from planner.season.model import Driver, Place
 from planner.store.database import APPLICATION_ID
 from planner.store.store import Store
 
@@ -236,6 +236,28 @@ def test_check_survives_values_that_cannot_even_be_read(store: Store) -> None:
         "a reading cannot be read",
     ]
     assert all("\n" not in line for line in found)
+
+
+@pytest.mark.parametrize(
+    ("kind", "statement"),
+    [
+        (Reading, "UPDATE reading SET taken_at = 9000000000000000000"),
+        (Reading, "UPDATE reading SET taken_at = 'morning'"),
+        (Reading, "UPDATE reading SET emergency_signs = 'cough'"),
+        (Driver, "UPDATE driver SET name = CAST(X'C1C2' AS TEXT)"),
+    ],
+)
+def test_values_that_cannot_be_read_are_said_in_one_line(store: Store, kind: type, statement: str) -> None:
+    keep_every_kind(store)
+    raw(store.path, statement)
+    with pytest.raises(StoreError, match=r"the database is damaged .*; use a backup") as refusal:
+        store.all(kind)
+    one_line(refusal)
+
+
+def test_errors_of_the_callers_own_are_not_taken_for_damage(store: Store) -> None:
+    with pytest.raises(ValueError, match="my own"), store.transaction(BY):
+        raise ValueError("my own")
 
 
 def test_the_database_itself_guards_references(store: Store) -> None:

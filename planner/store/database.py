@@ -108,12 +108,25 @@ def plain_errors(path: Path) -> Iterator[None]:
         raise StoreError(f"{path}: {plain_words(error)}") from error
 
 
+@contextmanager
+def readable_values(path: Path) -> Iterator[None]:
+    """Say that the database is damaged when a value in it cannot be what its column holds. Around the store's
+    own reading only: a caller's code may raise such errors for reasons of its own."""
+    try:
+        yield
+    except (ValueError, TypeError, OverflowError) as error:
+        message = " ".join(str(error).split())
+        raise StoreError(f"{path}: the database is damaged ({message}); use a backup") from error
+
+
 def plain_words(error: Exception) -> str:
     """What a database error means to the user, on one line."""
     cause: Any = error.orig if isinstance(error, StatementError) and error.orig is not None else error
     message = " ".join(str(cause).split())
     if "file is not a database" in message:
         return "this is not a database of this program"
+    if "decode" in message:  # the message itself would show what is in the record
+        return "the database is damaged (a text in it cannot be read); use a backup"
     if "malformed" in message:
         return f"the database is damaged ({message}); use a backup"
     if "locked" in message:

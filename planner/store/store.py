@@ -24,7 +24,14 @@ from planner.record_checks import name as name_problem
 from planner.record_checks import text as text_problem
 from planner.store import history, schema, upkeep
 from planner.store.bulk import held_before, reading_columns
-from planner.store.database import create_database_engine, plain_errors, prepare_path, reading, writing
+from planner.store.database import (
+    create_database_engine,
+    plain_errors,
+    prepare_path,
+    readable_values,
+    reading,
+    writing,
+)
 from planner.store.history import Change, ChangeSet
 from planner.store.migrations import migrate
 from planner.store.records import R, columns, kind_of, record_from
@@ -55,7 +62,7 @@ class Store:
         prepare_path(path)
         engine = create_database_engine(path)
         try:
-            with plain_errors(path):
+            with plain_errors(path), readable_values(path):
                 migrate(engine)
                 return cls(engine, path)
         except BaseException:
@@ -272,7 +279,7 @@ class Store:
     @contextmanager
     def _reading(self) -> Iterator[Connection]:
         current = self._current()
-        with plain_errors(self.path):
+        with plain_errors(self.path), readable_values(self.path):
             if current is not None:
                 yield current.connection
                 return
