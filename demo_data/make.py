@@ -11,6 +11,7 @@ from demo_data.fluids import CONDITIONS, morning_marks, weighings
 from demo_data.itineraries import itinerary
 from demo_data.readings import NOTICES, PRESSURES, SICK_PERIODS, readings
 from demo_data.world import COMMITMENTS, DRIVERS, HEADING, NOW, PLACES, ROUNDS, SESSIONS
+from planner.exchange.calendar_rounds import write_rounds
 from planner.exchange.context import FileContext
 from planner.exchange.kinds import write_records
 from planner.exchange.registry import KINDS
@@ -70,6 +71,10 @@ def write(folder: Path) -> None:
     for kind in KINDS:
         data = write_records(kind, season[kind.record], context, HEADING)
         (folder / f"{kind.name.replace(' ', '_')}.csv").write_bytes(data)
+    calendar = write_rounds(
+        ROUNDS, SESSIONS, {p.id: p for p in PLACES}, store_uid="invented-demo", now=NOW, heading=HEADING
+    )
+    (folder / "calendar.ics").write_bytes(calendar)
     clock = Column("clock_frozen_at", "the instant at which the demo's clock stands", required=True)
     (folder / "clock.csv").write_bytes(write_table([clock], [{clock.name: NOW}], HEADING))
 

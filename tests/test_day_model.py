@@ -67,7 +67,7 @@ def test_every_plan_of_the_curve_is_a_whole_itinerary_that_keeps_its_appointment
 
 
 def test_the_day_model_agrees_with_the_hourly_model(season: tuple[DaySeason, TradeOff]) -> None:
-    # Regression bound: the largest difference measured over the curve is below 0.25 points of SpO2 and 0.6 of
+    # Regression bound: the largest difference measured over the curve is 0.08 points of SpO2 and 0.21 of
     # capacity. What causes it is listed in planner.season.day_model.
     model, curve = season
     judged = evaluate_plans(model.problem, curve.plans)
@@ -75,8 +75,8 @@ def test_the_day_model_agrees_with_the_hourly_model(season: tuple[DaySeason, Tra
     given = outlooks([model.itinerary_of(plan) for plan in curve.plans], high, setting())
     hourly_spo2 = np.array([[o.race_spo2_pct.mean for o in row] for row in given])
     hourly_capacity = np.array([[o.race_capacity_pct.mean for o in row] for row in given])
-    assert np.abs(hourly_spo2 - judged.spo2_pct).max() < 0.25
-    assert np.abs(hourly_capacity - judged.capacity_pct).max() < 0.6
+    assert np.abs(hourly_spo2 - judged.spo2_pct).max() < 0.15
+    assert np.abs(hourly_capacity - judged.capacity_pct).max() < 0.35
 
 
 def test_more_nights_away_buy_more_saturation(season: tuple[DaySeason, TradeOff]) -> None:
