@@ -142,7 +142,7 @@ def finished(calendar: Calendar) -> bytes:
     days = [moment.date() if isinstance(moment, datetime) else moment for moment in moments]
     if days:
         calendar.add_missing_timezones(date(min(days).year - 1, 1, 1), date(max(days).year + 2, 1, 1))
-        # They come in the order of a set; the same plan must give the same file. Sorting keeps the others' order.
+        # They come in the order of a set, but the same plan must give the same file.
         calendar.subcomponents.sort(key=lambda part: str(part["tzid"]) if part.name == "VTIMEZONE" else "~")
     return bytes(calendar.to_ical())
 

@@ -84,8 +84,8 @@ class DayRound:
 class Rates:
     """What a plan costs, in nights away: a tent night, a flight, an hour of travel. The coach's own."""
 
-    tent_night: float = 0.25
-    flight: float = 0.0
+    tent_night: float = 0.5
+    flight: float = 0.5
     travel_hour: float = 0.0
 
 
