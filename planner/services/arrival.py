@@ -41,6 +41,7 @@ class Arrival:
     calendar: Calendar
     driver: Driver
     round: Round
+    planned: Itinerary
     point: RoundPoint
     fixed: tuple[Fixed, ...]
     setting: Setting
@@ -76,7 +77,7 @@ def arrival(
     """
     calendar, at = read_calendar(store), now(store)
     point = _point(calendar, given)
-    fixed = tuple(_fixed(calendar, driver))
+    fixed = tuple(fixed_of(calendar, driver))
     setting = Setting(
         driver=driver,
         places=calendar.places,
@@ -95,6 +96,7 @@ def arrival(
         calendar=calendar,
         driver=driver,
         round=given,
+        planned=itinerary,
         point=point,
         fixed=fixed,
         setting=setting,
@@ -160,7 +162,8 @@ def _point(calendar: Calendar, given: Round) -> RoundPoint:
     )
 
 
-def _fixed(calendar: Calendar, driver: Driver) -> list[Fixed]:
+def fixed_of(calendar: Calendar, driver: Driver) -> list[Fixed]:
+    """Everything that ties a driver to a place, in time order."""
     sessions = [session for each in calendar.sessions.values() for session in each]
     return fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id)
 
