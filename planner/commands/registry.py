@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from planner.commands import air, backup, check, clock, demo, drink, morning, read, sweat
+from planner.commands import air, arrive, backup, check, clock, demo, drink, morning, read, sweat
 from planner.commands.command import Command
 
 COMMANDS: tuple[Command, ...] = (
     air.COMMAND,
     morning.COMMAND,
+    arrive.COMMAND,
     clock.COMMAND,
     sweat.COMMAND,
     drink.COMMAND,

@@ -285,12 +285,13 @@ def replace_between(
 ) -> Itinerary:
     """Plan the stretch between two fixed points anew.
 
-    It leads from where the driver is at `start` through the visits, the last of which must be where the
-    driver is at `end`. Each leg arrives when its visit begins and takes as long as `times` says; a visit
-    to the place where the driver already is changes only the bed.
+    It leads from where the driver is at `start`, also when leaving just then, through the visits, the last
+    of which must be where the driver is at `end`. Each leg arrives when its visit begins and takes as long
+    as `times` says; a visit to the place where the driver already is changes only the bed.
     Raises: InputError naming the visit that cannot be reached in time, or the appointment that would break.
     """
-    first, last = _stay_at(itinerary, "start", start), _stay_at(itinerary, "end", end)
+    first = _stay_ending_at(itinerary, start) or _stay_at(itinerary, "start", start)
+    last = _stay_at(itinerary, "end", end)
     if not visits or visits[-1].place_id != last.place_id:
         raise InputError("visits", len(visits), f"a last visit to {_name(times.places, last.place_id)}")
     stretch: list[Stay | Leg] = [first]
@@ -362,6 +363,14 @@ def _stay_at(itinerary: Itinerary, field: str, at: datetime) -> Stay:
     if not isinstance(entry, Stay):
         raise InputError(field, _when(at), "a time at which the driver is at a place and not travelling")
     return entry
+
+
+def _stay_ending_at(itinerary: Itinerary, at: datetime) -> Stay | None:
+    """The stay that a leg leaves at an instant, if one does."""
+    for stay, leg in pairwise(itinerary.entries):
+        if isinstance(stay, Stay) and isinstance(leg, Leg) and stay.depart_at == at == leg.depart_at:
+            return stay
+    return None
 
 
 def _stay_of(driver_id: int, visit: Visit, depart_at: datetime) -> Stay:

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from datetime import datetime
+from datetime import date, datetime
 from typing import Final, Literal, TypeAlias
 
 from planner.errors import InputError, NotFoundError
 from planner.season.arrival import Option, arrival_options
 from planner.season.arrival_ways import Gap, gap_before
-from planner.season.constraints import Limits
+from planner.season.constraints import Limits, local_date
 from planner.season.evaluate import RoundPoint, Setting, round_point
 from planner.season.itinerary import Fixed, Itinerary, ends_at, fixed_points, starts_at
 from planner.season.model import Driver, Leg, Place, Round, Stay
@@ -55,6 +55,11 @@ class Arrival:
     def venue(self) -> Place:
         """Where the round is held."""
         return self.setting.places[self.point.place_id]
+
+    def arrives_on(self, option: Option) -> date | None:
+        """The local day on which an option reaches the venue; None when it cannot be built."""
+        at = option.arrives_at(self.point)
+        return None if at is None else local_date(at, self.venue)
 
     @property
     def in_hindsight(self) -> bool:
