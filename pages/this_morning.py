@@ -11,6 +11,7 @@ from planner.services.morning import DriverRow, ThisMorning
 from planner.services.notices import keep_notice
 from planner.ui.cached import morning_of
 from planner.ui.errors import plain_errors
+from planner.ui.fields import text_field
 from planner.ui.morning_rows import row_html
 from planner.ui.navigation import go_to
 from planner.ui.page import Context, answer, end_page, line, note_for_next_run, start_page
@@ -20,31 +21,35 @@ from planner.wording import clock, day, elevation, pressure, zone_name
 Kind: TypeAlias = Literal["told the physician", "note"]
 
 ASKING = "this morning asks about"
+KEPT = "notices kept on this morning"  # numbers the fields, so that the next ones begin empty
 
 
 def place_line(screen: ThisMorning, ctx: Context) -> str:
     """Place, elevation, local time and pressure with its source."""
     place, air = screen.place, screen.air
     if place is None or air is None:
-        return "Add places and drivers on Team."
+        return "Begin on Team: places first, then drivers."
+    when = f"{day(screen.at, place.zone)}, {clock(screen.at, place.zone)} {zone_name(place.zone, screen.at)}"
+    if screen.is_spread:
+        return f"The team is spread: each row names its own place and time. In {place.name} it is {when}."
     beds = (
         ""
         if place.bed_elevation_m == place.track_elevation_m
         else (f", beds {elevation(place.bed_elevation_m, ctx.units)}")
     )
+    away = f" · {screen.elsewhere} elsewhere" if screen.elsewhere else ""
     return (
-        f"{place.name}, {elevation(place.track_elevation_m, ctx.units)}{beds} · "
-        f"{day(screen.at, place.zone)}, {clock(screen.at, place.zone)} {zone_name(place.zone, screen.at)} · "
-        f"{pressure(air.pressure_hpa, ctx.units)}, {air.pressure_from}"
+        f"{place.name}, {elevation(place.track_elevation_m, ctx.units)}{beds} · {when} · "
+        f"{pressure(air.pressure_hpa, ctx.units)}, {air.pressure_from}{away}"
     )
 
 
 def draw_row(row: DriverRow, screen: ThisMorning, low_pct: float, ctx: Context) -> None:
     """One driver: the evidence, and what can be done."""
-    elsewhere = screen.place is not None and row.where.place.id != screen.place.id
+    elsewhere = screen.is_spread or (screen.place is not None and row.where.place.id != screen.place.id)
     with st.container(border=True, gap="small", key=f"p-card-{row.driver_id}"):
         evidence, actions = st.columns([7, 1], gap="small", vertical_alignment="center")
-        evidence.html(row_html(row, ctx.now, low_pct=low_pct, elsewhere=elsewhere))
+        evidence.html(row_html(row, ctx.now, ctx.units, low_pct=low_pct, elsewhere=elsewhere))
         with actions.container(gap=None, key=f"p-acts-{row.driver_id}"):
             again = "Measure again" if row.reading else "Measure"
             if st.button(again, type="tertiary", key=f"again_{row.driver_id}"):
@@ -66,17 +71,19 @@ def ask_about(row: DriverRow, kind: Kind) -> None:
 
 def ask(ctx: Context, row: DriverRow, kind: Kind) -> None:
     """Ask for the words of a note, or for confirmation that the physician was told."""
-    with plain_errors(), st.form(f"notice_{row.driver_id}", border=False):
-        name = literal(row.driver)
-        label = f"Note on {name}" if kind == "note" else f"The physician was told of {name}"
-        text = st.text_input(label, placeholder="" if kind == "note" else "in words, if any")
-        with st.container(horizontal=True):
-            keep = st.form_submit_button("Keep", type="primary")
-            leave = st.form_submit_button("Leave it")
-        if keep:
+    name = literal(row.driver)
+    label = f"Note on {name}" if kind == "note" else f"The physician was told of {name}"
+    number = st.session_state.get(KEPT, 0)
+    placeholder = "" if kind == "note" else "in words, if any"
+    text = text_field(label, f"notice_{kind}_{row.driver_id}_{number}", placeholder=placeholder)
+    with plain_errors(), st.container(horizontal=True):
+        if st.button("Keep", type="primary", key=f"keep_notice_{number}"):
             keep_notice(ctx.store, row.driver_id, kind, text, by=ctx.who, at=ctx.now)
+            st.session_state[KEPT] = number + 1
+            st.session_state.pop(ASKING)
             note_for_next_run(f"Kept for {row.driver}.")
-        if keep or leave:
+            st.rerun()
+        if st.button("Leave it", key=f"leave_notice_{number}"):
             st.session_state.pop(ASKING)
             st.rerun()
 

@@ -195,6 +195,8 @@ def test_demo_check_read_backup_morning_work_on_one_store(
     capsys.readouterr()
     assert main(["check", "--store", str(copy), "--json"]) == 0
     capsys.readouterr()
+    assert main(["morning", "--store", str(copy)]) == 0
+    assert ".;" not in capsys.readouterr().out  # sentences follow one another as they are
     assert main(["morning", "--store", str(copy), "--json"]) == 0
     assert json.loads(capsys.readouterr().out) == rows
 

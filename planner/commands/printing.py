@@ -47,7 +47,9 @@ def _cell(key: str, value: object) -> str:
     if isinstance(value, str):
         return value
     if isinstance(value, Sequence):
-        return "; ".join(str(each) for each in value) or "-"
+        parts = [str(each) for each in value]
+        # Sentences follow one another as they are, other items are set apart.
+        return (" " if all(part.endswith(".") for part in parts) else "; ").join(parts) or "-"
     return str(value)
 
 

@@ -32,12 +32,17 @@ LAST_DAY_NAMED: Final = 28  # later on the place says more than the count of day
 
 @dataclass(frozen=True)
 class Whereabout:
-    """Where a driver is: the place, the beds' elevation and the arrival there; None for what is not known."""
+    """Where a driver is: the place, the beds' elevation and the arrival there; None for what is not known.
+
+    Without a stay or leg at the instant it is a guess, and screens say so: where the last stay ended, else
+    at home.
+    """
 
     place: Place
     bed_elevation_m: float
     arrived_at: datetime | None
     on_the_way: bool = False  # then the place is the one that the journey leads to
+    is_planned: bool = True
 
 
 @dataclass(frozen=True)
@@ -99,17 +104,18 @@ class DriverCourse:
     def where(self, at: datetime) -> Whereabout:
         """Where the driver is: by the stay or leg, else where the last stay ended, else at home."""
         entry = where_is(self.driver, at, self.stays, self.legs)
+        is_planned = entry is not None
         if entry is None:
             ended = [s for s in self.stays if s.depart_at <= at]
             entry = max(ended, key=lambda s: s.depart_at, default=None)
         if entry is None:
-            return Whereabout(self.home, self.home.bed_elevation_m, None)
+            return Whereabout(self.home, self.home.bed_elevation_m, None, is_planned=False)
         if isinstance(entry, Leg):
             place = self.calendar.places[entry.to_place_id]
             return Whereabout(place, place.bed_elevation_m, entry.arrive_at, on_the_way=True)
         place = self.calendar.places[entry.place_id]
         bed_m = place.bed_elevation_m if entry.bed_elevation_m is None else entry.bed_elevation_m
-        return Whereabout(place, bed_m, entry.arrive_at)
+        return Whereabout(place, bed_m, entry.arrive_at, is_planned=is_planned)
 
     def expected(
         self, instants: Sequence[datetime], wakefulness: Wakefulness = "awake"

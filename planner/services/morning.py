@@ -78,6 +78,11 @@ class ThisMorning:
     elsewhere: int = 0
 
     @property
+    def is_spread(self) -> bool:
+        """Whether no one place speaks for the team: more drivers are elsewhere than there."""
+        return self.elsewhere > len(self.rows) - self.elsewhere
+
+    @property
     def sentence(self) -> str:
         """As "8 drivers: 1 refer, 2 repeat, 4 in range, 1 not measured"."""
         if not self.rows:

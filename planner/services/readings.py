@@ -8,7 +8,7 @@ from datetime import datetime, timedelta
 from typing import Final
 from zoneinfo import ZoneInfo
 
-from planner.errors import InputError
+from planner.errors import InputError, StoreError
 from planner.hydration.model import MorningMark
 from planner.monitoring.model import Reading, SickPeriod, Wakefulness
 from planner.monitoring.outcome import CONFIRMS_WITHIN, SIGNS_LAST, Judgement, Sample
@@ -85,9 +85,9 @@ def take(store: Store, typed: TypedReading, *, by: str, now: datetime) -> tuple[
     Raises: InputError naming the field as the screen calls it; nothing is kept then.
     """
     if typed.driver_id is None:
-        raise InputError("driver", "nothing chosen", "one of the team")
+        raise InputError("driver", "", "one of the team")
     if typed.spo2_pct is None:
-        raise InputError("SpO2", "nothing typed", "40 to 100 %")
+        raise InputError("SpO2", "", "40 to 100 %")
     calendar = read_calendar(store)
     driver = next((d for d in calendar.drivers if d.id == typed.driver_id), None)
     if driver is None:
@@ -141,13 +141,21 @@ def judge_entry(store: Store, reading: Reading) -> JudgedEntry:
     return JudgedEntry(driver.name, calendar.places[reading.place_id].zone, sample, judgement)
 
 
-def correct(store: Store, corrected: Reading, *, by: str, why: str) -> Reading:
+def correct(store: Store, corrected: Reading, *, seen: Reading, by: str, why: str) -> Reading:
     """Keep the corrected values of a reading; the old ones stay in its changes.
 
-    Raises: InputError when nothing differs, no reason is given or a value cannot be used.
+    Parameters: `seen` is the reading as whoever corrects it last saw it.
+    Raises: InputError when nothing differs, no reason is given or a value cannot be used; StoreError when
+    somebody else has corrected the reading since it was seen.
     """
-    if corrected == store.get(Reading, corrected.id):
-        raise InputError("correction", "nothing changed", "at least one other value")
+    present = store.get(Reading, corrected.id)
+    if present != seen:
+        raise StoreError(
+            "somebody corrected this reading meanwhile: look at what stands there now, then keep yours if it "
+            "is still right"
+        )
+    if corrected == present:
+        raise InputError("correction", "", "at least one other value")
     reason = " ".join(why.split())
     if not reason:
         raise InputError("why", why, "a word on why it is corrected")

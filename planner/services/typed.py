@@ -2,12 +2,29 @@
 
 from __future__ import annotations
 
+import re
 from datetime import date, datetime, time
+from typing import Final
 from zoneinfo import ZoneInfo
 
 from planner.checks import QUANTITIES
 from planner.errors import InputError
 from planner.units import from_house, to_house
+
+_NUMBER: Final = re.compile(r"[+-]?(\d+([.,]\d*)?|[.,]\d+)", re.ASCII)
+
+
+def typed_number(field: str, text: str, expected: str) -> float | None:
+    """Return the number in a line of text, None when it is blank; a decimal comma and a per cent sign pass.
+
+    Raises: InputError naming the field and what was expected for anything else.
+    """
+    bare = "".join(text.split()).removesuffix("%")
+    if not bare:
+        return None
+    if not _NUMBER.fullmatch(bare):
+        raise InputError(field, text, expected)
+    return float(bare.replace(",", "."))
 
 
 def typed_value(field: str, value: float | None, quantity: str, kind: str, unit: str) -> float:

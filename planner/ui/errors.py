@@ -9,7 +9,7 @@ from contextlib import contextmanager
 
 import streamlit as st
 
-from planner.errors import PlannerError
+from planner.errors import InputError, PlannerError, RefusedLineError
 from planner.ui.text import literal
 
 _log = logging.getLogger("planner")
@@ -33,4 +33,15 @@ def plain_errors() -> Iterator[None]:
 
 def show_error(error: PlannerError) -> None:
     """Show an error of ours; its text is one line that says what to do."""
-    st.error(literal(str(error)))
+    st.error(literal(in_screen_words(error)))
+
+
+def in_screen_words(error: PlannerError) -> str:
+    """An error's line as a screen says it: a field left empty is called that, a number is written plainly."""
+    if not isinstance(error, InputError) or isinstance(error, RefusedLineError):
+        return str(error)
+    if error.value is None or error.value == "":
+        return f"{error.field}: nothing given yet, expected {error.expected}"
+    if isinstance(error.value, float):
+        return f"{error.field}: {error.value:g} cannot be used, expected {error.expected}"
+    return str(error)

@@ -7,9 +7,21 @@ from datetime import datetime
 from planner.charts.strip import strip
 from planner.charts.theme import OUTCOME_STYLES
 from planner.monitoring.model import Notice
+from planner.services.course import Whereabout
 from planner.services.morning import DriverRow
 from planner.ui.text import escaped
-from planner.wording import DASH, age, clock, day, day_and_clock, per_cent, pulse
+from planner.wording import (
+    DASH,
+    UnitChoice,
+    age,
+    clock,
+    day,
+    day_and_clock,
+    elevation,
+    per_cent,
+    pulse,
+    zone_name,
+)
 
 
 def outcome_html(outcome: str) -> str:
@@ -21,15 +33,16 @@ def outcome_html(outcome: str) -> str:
     )
 
 
-def row_html(row: DriverRow, now: datetime, *, low_pct: float, elsewhere: bool) -> str:
+def row_html(row: DriverRow, now: datetime, units: UnitChoice, *, low_pct: float, elsewhere: bool) -> str:
     """The whole row.
 
     `low_pct` is the bottom of its strip, `elsewhere` adds where the driver is when most are not there.
     """
-    place = f'<div class="p-small">{escaped(_place(row))}</div>' if elsewhere or row.where.on_the_way else ""
+    names_place = elsewhere or row.where.on_the_way or not row.where.is_planned
+    place = f'<div class="p-small">{escaped(_place(row, now, units))}</div>' if names_place else ""
     return (
         '<div class="p-row">'
-        f'<div class="p-who"><div class="p-name">{escaped(row.driver)}</div>{outcome_html(row.outcome)}'
+        f'<div class="p-who"><h2 class="p-name">{escaped(row.driver)}</h2>{outcome_html(row.outcome)}'
         f"{place}</div>"
         f'<div class="p-number"><div class="p-value">{escaped(_value(row))}</div>'
         f"{_when(row, now)}</div>"
@@ -40,9 +53,19 @@ def row_html(row: DriverRow, now: datetime, *, low_pct: float, elsewhere: bool) 
     )
 
 
-def _place(row: DriverRow) -> str:
-    name = row.where.place.name
-    return f"on the way to {name}" if row.where.on_the_way else f"at {name}"
+def whereabout_words(where: Whereabout, units: UnitChoice) -> str:
+    """As "at Talquime, 2 250 m"; a guess is called one."""
+    place = f"{where.place.name}, {elevation(where.bed_elevation_m, units)}"
+    if where.on_the_way:
+        return f"on the way to {place}"
+    if where.is_planned:
+        return f"at {place}"
+    guess = "at home" if where.arrived_at is None else "still there"
+    return f"at {place} (no stay planned now: taken to be {guess})"
+
+
+def _place(row: DriverRow, now: datetime, units: UnitChoice) -> str:
+    return f"{whereabout_words(row.where, units)}, {clock(now, row.zone)} {zone_name(row.zone, now)}"
 
 
 def _value(row: DriverRow) -> str:

@@ -1,60 +1,55 @@
-"""Corrections: the old value stays visible, nothing goes for good; leaving out, sick periods."""
+"""Corrections: the old value stays visible, nothing goes for good; leaving out, putting back."""
 
 from __future__ import annotations
 
-from dataclasses import replace
-from datetime import datetime, time, timedelta
+from collections.abc import Callable
+from dataclasses import fields, replace
+from datetime import datetime, timedelta
 from typing import Final
-from zoneinfo import ZoneInfo
 
 import streamlit as st
 
+from planner.errors import InputError
 from planner.monitoring.model import Reading
-from planner.season.model import Driver, Place
-from planner.services.readings import (
-    correct,
-    correction_words,
-    mark_ill,
-    mark_well,
-    open_sick_period,
-    reading_words,
-)
-from planner.services.typed import local_instant
+from planner.season.model import Place
+from planner.services.readings import correct, correction_words, reading_words
+from planner.services.typed import typed_number
 from planner.store.store import Store
+from planner.ui.cached import morning_of
+from planner.ui.errors import plain_errors
+from planner.ui.fields import PULSE_ICON, SPO2_ICON, choose_driver, number_field, text_field, wanted
 from planner.ui.page import Context, note_for_next_run
-from planner.ui.text import escaped, literal
-from planner.wording import day
+from planner.ui.reading_illness import draw_illness
+from planner.ui.text import escaped
+from planner.wording import zone_name
 
 DAYS_SHOWN: Final = 21
+
+# With a reading's id: the draft's number with the reading as it stood then; the reading as it was last shown.
+_DRAFT: Final = "correction begun on"
+_DRAWN: Final = "correction drawn over"
 
 
 def draw_corrections(ctx: Context) -> None:
     """Choose a driver and a reading; correct it, leave it out, remove it or put it back; mark an illness."""
-    drivers = {d.id: d for d in sorted(ctx.store.all(Driver), key=lambda d: d.name)}
-    chosen = st.pills(
-        "Driver",
-        list(drivers),
-        format_func=lambda each: literal(drivers[each].name),
-        default=next(iter(drivers)),
-        required=True,
-        key="correct_driver",
-        persist_state="session",
+    rows = {row.driver_id: row for row in sorted(morning_of(ctx).rows, key=lambda row: row.driver)}
+    chosen = choose_driver(
+        {each: row.driver for each, row in rows.items()}, next(iter(rows)), "correct_driver", required=True
     )
-    if chosen not in drivers:
+    if chosen is None:
         return
-    driver = drivers[chosen]
     zones = {p.id: p.zone for p in ctx.store.all(Place, include_removed=True)}
     since = ctx.now - timedelta(days=DAYS_SHOWN)
-    kept = [r for r in ctx.store.readings(driver_id=driver.id) if r.taken_at >= since][::-1]
+    kept = ctx.store.readings(driver_id=chosen, since=since)[::-1]
     readings, illness = st.columns([3, 2], gap="large")
-    with readings:
+    with readings, plain_errors():
         if kept:
             _reading(ctx, kept, zones)
         else:
             st.html(f'<div class="p-line">No readings in the last {DAYS_SHOWN} days.</div>')
-        _removed(ctx, driver, zones, since)
-    with illness:
-        _illness(ctx, driver)
+        _removed(ctx, chosen, zones, since)
+    with illness, plain_errors():
+        draw_illness(ctx, rows[chosen])
 
 
 def _reading(ctx: Context, kept: list[Reading], zones: dict[int, str]) -> None:
@@ -63,106 +58,133 @@ def _reading(ctx: Context, kept: list[Reading], zones: dict[int, str]) -> None:
         "Reading",
         list(by_id),
         format_func=lambda each: reading_words(by_id[each], zones[by_id[each].place_id]),
-        key="correct_which",
+        key=f"correct_which_{kept[0].driver_id}",
+        persist_state="session",
     )
     if chosen not in by_id:
         return
     reading = by_id[chosen]
     _history(ctx.store, reading, zones[reading.place_id])
-    key = f"{reading.id}_{ctx.store.version()}"
-    with st.form(f"correct_{key}", border=True):
-        left, right = st.columns(2, wrap=False)
-        spo2_pct = left.number_input(
-            "SpO2, %", value=reading.spo2_pct, step=1.0, format="%g", key=f"c_s_{key}"
-        )
-        pulse_bpm = right.number_input(
-            "Pulse, 1/min", value=reading.pulse_bpm, step=1.0, format="%g", key=f"c_p_{key}"
-        )
+    draft, seen = st.session_state.setdefault(f"{_DRAFT} {reading.id}", (1, reading))
+    key = f"correct_{{}}_{reading.id}_{draft}"
+    with st.container(border=True, key="p-card-correct"):
+        build = _fields(seen, key)
+        why = text_field("Why is it corrected?", key.format("why"), placeholder="e.g. typing error")
+        if reading != seen:
+            if not why and _is_untouched(build, seen):
+                _begin(reading, draft)
+                st.rerun()
+            st.html(
+                '<div class="p-small" role="status">Somebody corrected this reading meanwhile; what you '
+                "changed here goes over it.</div>"
+            )
         with st.container(horizontal=True):
-            asleep = st.toggle("Asleep", reading.wakefulness == "asleep", key=f"c_a_{key}")
-            at_rest = st.toggle("At rest", reading.circumstance == "at rest", key=f"c_r_{key}")
-            warm_hand = st.toggle("Warm hand", reading.warm_hand, key=f"c_w_{key}")
-        quality = st.text_input("What was wrong with it", reading.quality_note, key=f"c_q_{key}")
-        left_out = st.text_input(
-            "Leave it out, because",
-            reading.left_out,
-            help="It stays visible as a cross, judges nobody and teaches the driver's range nothing.",
-            key=f"c_l_{key}",
-        )
-        why = st.text_input("Why is it corrected?", placeholder="e.g. typing error", key=f"c_y_{key}")
-        with st.container(horizontal=True):
-            change = st.form_submit_button("Keep the correction", type="primary")
-            remove = st.form_submit_button("Remove the reading")
+            change = st.button("Keep the correction", type="primary", key=key.format("keep"))
+            remove = st.button("Remove the reading", key=key.format("remove"))
+    drawn = st.session_state.get(f"{_DRAWN} {reading.id}", reading)
+    st.session_state[f"{_DRAWN} {reading.id}"] = reading
     if change:
-        corrected = replace(
-            reading,
-            spo2_pct=reading.spo2_pct if spo2_pct is None else spo2_pct,
-            pulse_bpm=pulse_bpm,
+        typed = build()
+        corrected = _over(reading, seen, typed)
+        kept_so = correct(ctx.store, corrected, seen=drawn, by=ctx.who, why=why or typed.left_out)
+        _begin(kept_so, draft)
+        note_for_next_run("Corrected; the old value stands beside it.")
+        st.rerun()
+    if remove:
+        ctx.store.remove(reading, by=ctx.who, why=" ".join(why.split()))
+        _begin(reading, draft)
+        note_for_next_run("Removed; it can be put back below.")
+        st.rerun()
+
+
+def _begin(reading: Reading, draft: int) -> None:
+    """The next draft of a reading begins with the reading as it is."""
+    st.session_state[f"{_DRAFT} {reading.id}"] = (draft + 1, reading)
+    st.session_state[f"{_DRAWN} {reading.id}"] = reading
+
+
+def _fields(seen: Reading, key: str) -> Callable[[], Reading]:
+    """Draw the fields; what is returned builds the reading as they say it, an empty SpO2 as it was."""
+    left, right = st.columns(2, wrap=False)
+    with left:
+        spo2 = number_field("SpO2, %", key.format("spo2"), _shown(seen.spo2_pct), icon=SPO2_ICON)
+    with right:
+        pulse = number_field("Pulse, 1/min", key.format("pulse"), _shown(seen.pulse_bpm), icon=PULSE_ICON)
+    with st.container(horizontal=True):
+        asleep = _switch("Asleep", seen.wakefulness == "asleep", key.format("asleep"))
+        at_rest = _switch("At rest", seen.circumstance == "at rest", key.format("rest"))
+        warm_hand = _switch("Warm hand", seen.warm_hand, key.format("hand"))
+    quality = text_field("What was wrong with it", key.format("quality"), seen.quality_note)
+    left_out = text_field(
+        "Leave it out, because",
+        key.format("left_out"),
+        seen.left_out,
+        help="It stays visible as a cross, judges nobody and teaches the driver's range nothing.",
+    )
+
+    def build() -> Reading:
+        spo2_pct = typed_number("SpO2", spo2, wanted("spo2_pct"))
+        return replace(
+            seen,
+            spo2_pct=seen.spo2_pct if spo2_pct is None else spo2_pct,
+            pulse_bpm=typed_number("pulse", pulse, wanted("pulse_bpm")),
             wakefulness="asleep" if asleep else "awake",
             circumstance="at rest" if at_rest else "after a session",
             warm_hand=warm_hand,
             quality_note=" ".join(quality.split()),
             left_out=" ".join(left_out.split()),
         )
-        correct(ctx.store, corrected, by=ctx.who, why=why or left_out)
-        note_for_next_run("Corrected; the old value stands beside it.")
-        st.rerun()
-    if remove:
-        ctx.store.remove(reading, by=ctx.who, why=" ".join(why.split()))
-        note_for_next_run("Removed; it can be put back below.")
-        st.rerun()
+
+    return build
+
+
+def _is_untouched(build: Callable[[], Reading], seen: Reading) -> bool:
+    try:
+        return build() == seen
+    except InputError:
+        return False
+
+
+def _switch(label: str, value: bool, key: str) -> bool:
+    return st.toggle(label, value, key=key, persist_state="session")
+
+
+def _shown(value: float | None) -> str:
+    return "" if value is None else f"{value:g}"
+
+
+def _over(reading: Reading, seen: Reading, typed: Reading) -> Reading:
+    """The reading as it is now, changed where the typed one differs from the one seen."""
+    changed = {
+        field.name: getattr(typed, field.name)
+        for field in fields(Reading)
+        if getattr(typed, field.name) != getattr(seen, field.name)
+    }
+    return replace(reading, **changed)
 
 
 def _history(store: Store, reading: Reading, zone: str) -> None:
-    """Every correction of the reading, the old value first."""
+    """Where it was taken, and every correction of it, the old value first."""
+    place = store.get(Place, reading.place_id)
+    typed = f", typed by {reading.entered_by}" if reading.entered_by else ""
     changes = [c for c in store.changes(Reading, reading.id) if c.before is not None]
-    typed = f"Typed by {reading.entered_by}." if reading.entered_by else ""
-    lines = [typed, *(correction_words(c, zone) for c in changes)]
-    st.html("".join(f'<div class="p-small">{escaped(text)}</div>' for text in lines if text))
+    lines = [
+        f"At {place.name}, times in {zone_name(zone, reading.taken_at)}{typed}.",
+        *(correction_words(c, zone) for c in changes),
+    ]
+    st.html("".join(f'<div class="p-small">{escaped(text)}</div>' for text in lines))
 
 
-def _removed(ctx: Context, driver: Driver, zones: dict[int, str], since: datetime) -> None:
+def _removed(ctx: Context, driver_id: int, zones: dict[int, str], since: datetime) -> None:
     """The readings that were removed, each with the way back."""
-    live = {r.id for r in ctx.store.all(Reading, driver_id=driver.id)}
-    everything = ctx.store.all(Reading, include_removed=True, driver_id=driver.id)
+    live = {r.id for r in ctx.store.all(Reading, driver_id=driver_id)}
+    everything = ctx.store.all(Reading, include_removed=True, driver_id=driver_id)
     gone = [r for r in everything if r.id not in live and r.taken_at >= since]
     for reading in gone:
         with st.container(horizontal=True, vertical_alignment="center"):
             words = reading_words(reading, zones[reading.place_id])
-            st.html(f'<div class="p-small">Removed: <s>{escaped(words)}</s></div>')
+            st.html(f'<div class="p-small">Removed: <s>{escaped(words)}</s></div>', width="content")
             if st.button("Put back", type="tertiary", key=f"back_{reading.id}"):
                 ctx.store.restore(Reading, reading.id, by=ctx.who)
                 note_for_next_run("Put back.")
                 st.rerun()
-
-
-def _illness(ctx: Context, driver: Driver) -> None:
-    """A sick period begins or ends here; while it lasts every reading is for the physician."""
-    period = open_sick_period(ctx.store, driver.id, ctx.now)
-    zone = ctx.store.get(Place, driver.home_place_id).zone
-    if period is not None:
-        note = f": {period.note}" if period.note else ""
-        st.html(
-            f'<div class="p-why"><b>Marked ill</b> since {escaped(day(period.starts_at, zone))} by '
-            f"{escaped(period.marked_by)}{escaped(note)}. The physician decides; its readings teach the "
-            "driver's range nothing.</div>"
-        )
-        if st.button("Well again from now on"):
-            mark_well(ctx.store, period, at=ctx.now, by=ctx.who)
-            note_for_next_run(f"{driver.name} is no longer marked ill.")
-            st.rerun()
-        return
-    with st.form(f"ill_{driver.id}", border=True):
-        st.html('<div class="p-name">Illness</div>')
-        since = st.date_input(
-            "Ill since", ctx.now.astimezone(ZoneInfo(zone)).date(), key=f"ill_on_{driver.id}"
-        )
-        marked_by = st.text_input("Stated by", "the driver", key=f"ill_by_{driver.id}")
-        note = st.text_input("Note", key=f"ill_note_{driver.id}")
-        if st.form_submit_button("Mark ill"):
-            starts_at = local_instant("ill since", since, time(), zone)
-            mark_ill(
-                ctx.store, driver.id, since=starts_at, marked_by=marked_by, note=note, by=ctx.who, now=ctx.now
-            )
-            note_for_next_run(f"{driver.name} is marked ill: the physician decides.")
-            st.rerun()

@@ -1,7 +1,12 @@
-"""Quick entry of a reading: a few taps on a phone, and what was typed shown back with its outcome."""
+"""Quick entry of a reading: a few taps on a phone, and what was typed shown back with its outcome.
+
+The fields stand in no form: a form keeps what was typed in the browser until its button is pressed, and a
+page that is left loses it.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from datetime import datetime
 from typing import Final
 
@@ -9,17 +14,21 @@ import streamlit as st
 
 from planner.errors import PlannerError
 from planner.monitoring.model import Reading
+from planner.monitoring.outcome import ADVICE
 from planner.physiology.illness import EMERGENCY_SIGNS, HIGHEST_ITEM
 from planner.season.model import Place
-from planner.services.morning import ThisMorning
+from planner.services.morning import DriverRow, ThisMorning
 from planner.services.readings import TypedReading, judge_entry, reading_words, take
-from planner.services.typed import typed_value
+from planner.services.typed import typed_number, typed_value
+from planner.ui import reading_draft
 from planner.ui.cached import morning_of
 from planner.ui.errors import show_error
-from planner.ui.morning_rows import outcome_html
+from planner.ui.fields import PULSE_ICON, SPO2_ICON, choose_driver, number_field, wanted
+from planner.ui.morning_rows import outcome_html, whereabout_words
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, note_for_next_run
-from planner.ui.text import escaped, literal
+from planner.ui.reading_draft import Draft
+from planner.ui.text import escaped
 from planner.wording import unit_name
 
 AT_REST: Final = "At rest"
@@ -34,35 +43,35 @@ SCORED: Final = {
 }
 SCORE_WORDS: Final = ("none", "mild", "moderate", "severe")
 
-_ROUND: Final = "entry round"  # moves with every reading kept, so that the next form begins empty
-_DRIVER: Final = "entry driver"
 _LAST: Final = "entry kept last"
 
 
 def draw_entry(ctx: Context) -> None:
-    """The last reading kept, then the form for the next one."""
+    """The last reading kept, then the fields of the next one."""
     screen = morning_of(ctx)
     _show_last(ctx)
-    _preset_driver(screen)
-    entry = int(st.session_state.get(_ROUND, 0))
-    with st.form(f"entry_{entry}", border=False):
-        typed = _quick(screen, entry)
-        with st.expander("Symptoms and emergency signs"):
-            scores, signs = _symptoms(entry)
-        with st.expander("Body mass, time, place, oximeter"):
-            mass, local_time, place, device = _more(ctx, entry)
-        kept = st.form_submit_button("Keep the reading", type="primary", width="stretch")
-    if not kept:
+    draft = _draft(screen)
+    _draw_set_aside(screen)
+    driver_id, spo2, pulse, wakefulness, how = _quick(ctx, screen, draft)
+    with st.expander("Symptoms and emergency signs"):
+        scores, signs = _symptoms(draft)
+    with st.expander("Body mass, time, place, oximeter"):
+        mass, local_time, place, device = _more(ctx, draft)
+    # The shortcut stands for the Enter key of a form; the button is a new one with every draft, so that a
+    # second press on the old one keeps nothing twice.
+    pressed = st.button(
+        "Keep the reading", type="primary", width="stretch", shortcut="Mod+Enter", key=draft.key("keep")
+    )
+    if not pressed:
         return
     try:
-        driver_id, spo2_pct, pulse_bpm, wakefulness, how = typed
         mass_kg = None if mass is None else typed_value("body mass", mass, "mass_kg", "mass", ctx.units.mass)
         reading, change_set_id = take(
             ctx.store,
             TypedReading(
                 driver_id=driver_id,
-                spo2_pct=spo2_pct,
-                pulse_bpm=pulse_bpm,
+                spo2_pct=typed_number("SpO2", spo2, wanted("spo2_pct")),
+                pulse_bpm=typed_number("pulse", pulse, wanted("pulse_bpm")),
                 wakefulness="asleep" if wakefulness == "asleep" else "awake",
                 at_rest=AT_REST in how,
                 warm_hand=WARM_HAND in how,
@@ -80,73 +89,93 @@ def draw_entry(ctx: Context) -> None:
     except PlannerError as error:
         show_error(error)
         return
-    st.session_state[_ROUND] = entry + 1
+    reading_draft.end()
     st.session_state[_LAST] = (reading.id, change_set_id)
-    st.session_state.pop(_DRIVER, None)
     st.rerun()
 
 
-def _preset_driver(screen: ThisMorning) -> None:
-    """Who is measured next: the one handed on by another page, else the first not measured yet."""
+def _draft(screen: ThisMorning) -> Draft:
+    """The draft to show: for the driver handed on by another page, else for the first not measured yet."""
     handed_on = driver_handed_on()
     if handed_on is not None:
-        _begin_with(handed_on)
-    elif _DRIVER not in st.session_state:
-        waiting = [row.driver_id for row in screen.rows if row.outcome == "not measured"]
-        st.session_state[_DRIVER] = waiting[0] if waiting else None
+        return reading_draft.begin(handed_on)
+    draft = reading_draft.shown()
+    if draft is not None:
+        return draft
+    waiting = [row.driver_id for row in screen.rows if row.outcome == "not measured"]
+    return reading_draft.begin(waiting[0] if waiting else None)
 
 
-def _begin_with(driver_id: int) -> None:
-    """Begin an empty form with this driver chosen."""
-    st.session_state[_DRIVER] = driver_id
-    st.session_state[_ROUND] = int(st.session_state.get(_ROUND, 0)) + 1
+def _draw_set_aside(screen: ThisMorning) -> None:
+    """Half-typed readings that gave way to another driver's."""
+    names = {row.driver_id: row.driver for row in screen.rows}
+    for draft in reading_draft.set_aside():
+        with st.container(horizontal=True, vertical_alignment="center", key=f"p-aside-{draft.number}"):
+            spo2 = draft.value("spo2")
+            typed = f", SpO2 {spo2}" if spo2 else ""
+            name = names.get(draft.driver_id or 0, "no driver chosen")
+            st.html(f'<div class="p-small">Half typed: {escaped(name + typed)}</div>', width="content")
+            if st.button("Go on with it", type="tertiary", key=draft.key("go_on")):
+                reading_draft.take_up(draft)
+                st.rerun()
+            if st.button("Drop it", type="tertiary", key=draft.key("drop")):
+                reading_draft.drop(draft)
+                st.rerun()
 
 
 def _quick(
-    screen: ThisMorning, entry: int
-) -> tuple[int | None, float | None, float | None, str | None, list[str]]:
-    names = {row.driver_id: row.driver for row in sorted(screen.rows, key=lambda row: row.driver)}
-    preset = st.session_state.get(_DRIVER)
-    driver_id = st.pills(
-        "Driver",
-        list(names),
-        default=preset if preset in names else None,
-        format_func=lambda each: literal(names[each]),
-        key=f"entry_driver_{entry}",
+    ctx: Context, screen: ThisMorning, draft: Draft
+) -> tuple[int | None, str, str, str | None, Sequence[str]]:
+    rows = {row.driver_id: row for row in sorted(screen.rows, key=lambda row: row.driver)}
+    driver_id = choose_driver(
+        {each: row.driver for each, row in rows.items()}, draft.preset_driver_id, draft.key("driver")
     )
+    if driver_id is not None:
+        _say_where(ctx, rows[driver_id])
     left, right = st.columns(2, wrap=False)
-    spo2_pct = left.number_input(
-        "SpO2, %", value=None, step=1.0, format="%g", placeholder="e.g. 93", key=f"entry_spo2_{entry}"
-    )
-    pulse_bpm = right.number_input(
-        "Pulse, 1/min",
-        value=None,
-        step=1.0,
-        format="%g",
-        placeholder="may be empty",
-        key=f"entry_pulse_{entry}",
-    )
+    with left:
+        spo2 = number_field("SpO2, %", draft.key("spo2"), placeholder="e.g. 93", icon=SPO2_ICON)
+    with right:
+        pulse = number_field("Pulse, 1/min", draft.key("pulse"), placeholder="may be empty", icon=PULSE_ICON)
     wakefulness = st.segmented_control(
-        "Taken", ["awake", "asleep"], default="awake", required=True, key=f"entry_wake_{entry}"
+        "Taken",
+        ["awake", "asleep"],
+        default="awake",
+        required=True,
+        key=draft.key("wake"),
+        persist_state="session",
     )
     how = st.pills(
-        "Take away what was not so",
+        "How (take away what was not so)",
         HOW_TAKEN,
         selection_mode="multi",
         default=list(HOW_TAKEN),
-        key=f"entry_how_{entry}",
+        key=draft.key("how"),
+        persist_state="session",
     )
-    return driver_id, spo2_pct, pulse_bpm, wakefulness, list(how)
+    return driver_id, spo2, pulse, wakefulness, how
 
 
-def _symptoms(entry: int) -> tuple[dict[str, int | None], list[str]]:
+def _say_where(ctx: Context, row: DriverRow) -> None:
+    """Where a reading will count as taken, unless another place is chosen."""
+    words = whereabout_words(row.where, ctx.units)
+    st.html(f'<div class="p-small">Counts as taken {escaped(words)}.</div>')
+
+
+def _symptoms(draft: Draft) -> tuple[dict[str, int | None], list[str]]:
     signs = st.pills(
         "Emergency signs",
         list(EMERGENCY_SIGNS),
         selection_mode="multi",
         format_func=lambda code: EMERGENCY_SIGNS[code],
-        key=f"entry_signs_{entry}",
+        key=draft.key("signs"),
+        persist_state="session",
     )
+    if signs:
+        st.html(
+            f'<div class="p-why" role="alert">{outcome_html("urgent")} '
+            f'<span class="p-do">{escaped(ADVICE["urgent"])}</span></div>'
+        )
     st.html('<div class="p-small">Lake Louise score: ask all four, or leave all four empty.</div>')
     scores: dict[str, int | None] = {}
     for name, label in SCORED.items():
@@ -154,31 +183,36 @@ def _symptoms(entry: int) -> tuple[dict[str, int | None], list[str]]:
             label,
             list(range(HIGHEST_ITEM + 1)),
             format_func=lambda i: f"{i} {SCORE_WORDS[i]}",
-            key=f"entry_{name}_{entry}",
+            key=draft.key(name),
+            persist_state="session",
         )
     return scores, list(signs)
 
 
-def _more(ctx: Context, entry: int) -> tuple[float | None, datetime | None, Place | None, str]:
+def _more(ctx: Context, draft: Draft) -> tuple[float | None, datetime | None, Place | None, str]:
     mass = st.number_input(
         f"Body mass, {unit_name(ctx.units.mass)}",
         value=None,
         step=0.1,
         format="%.1f",
-        key=f"entry_mass_{entry}",
+        key=draft.key("mass"),
+        persist_state="session",
     )
-    local_time = st.datetime_input("Taken at, local time (empty: now)", value=None, key=f"entry_time_{entry}")
-    places = sorted(ctx.store.all(Place), key=lambda place: place.name)
-    place = st.selectbox(
+    local_time = st.datetime_input(
+        "Taken at, local time there (empty: now)", value=None, key=draft.key("time"), persist_state="session"
+    )
+    places = {place.id: place for place in sorted(ctx.store.all(Place), key=lambda place: place.name)}
+    place_id = st.selectbox(
         "Place",
-        places,
+        list(places),
         index=None,
-        format_func=lambda each: each.name,
+        format_func=lambda each: places[each].name,
         placeholder="where the itinerary has the driver",
-        key=f"entry_place_{entry}",
+        key=draft.key("place"),
+        persist_state="session",
     )
     device = st.text_input("Oximeter", key="entry_device", persist_state="session")
-    return mass, local_time, place, device
+    return mass, local_time, places.get(place_id) if place_id else None, device
 
 
 def _show_last(ctx: Context) -> None:
@@ -202,7 +236,7 @@ def _show_last(ctx: Context) -> None:
             again = st.button("Measure again", type="tertiary")
             back = st.button("Take it back", type="tertiary")
         if again:
-            _begin_with(entry.reading.driver_id)
+            reading_draft.begin(entry.reading.driver_id)
             st.rerun()
         if back:
             ctx.store.undo(change_set_id, by=ctx.who)

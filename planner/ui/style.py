@@ -20,12 +20,17 @@ button[data-testid="stBaseButton-tertiary"],
 [class*="st-key-p-card-"]{padding:.6rem .9rem .5rem;background:var(--surface);margin-bottom:-.4rem}
 [class*="st-key-p-acts-"]{gap:0}
 [class*="st-key-p-acts-"] button{min-height:1.75rem;padding:0}
+.st-key-p-acts-last{gap:1.25rem}
+.stApp a[aria-current="page"]{background:color-mix(in srgb,var(--accent) 14%,transparent)}
+[data-testid="stExpandSidebarButton"]{min-height:2.75rem;min-width:5.5rem;color:var(--accent)}
+[data-testid="stExpandSidebarButton"]::after{content:"Menu";font-size:.9375rem}
 [data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
 .p-over{font-size:.8125rem;color:var(--muted);letter-spacing:.02em;line-height:1.4}
 .p-answer{font-size:1.375rem;font-weight:600;line-height:1.3;margin:0;padding:0}
 .p-line{color:var(--muted);font-size:.9375rem;line-height:1.45}
 .p-foot{color:var(--muted);font-size:.8125rem;line-height:1.5;border-top:1px solid var(--rule);
  padding-top:.75rem;margin-top:1.25rem}
+.p-foot summary{padding:.35rem 0}
 .p-signs{margin:.25rem 0 .5rem;padding-left:1.1rem}
 .p-out{font-weight:600;white-space:nowrap}
 .p-out.in-range{color:var(--in-range);font-weight:500}
@@ -35,7 +40,7 @@ button[data-testid="stBaseButton-tertiary"],
 .p-out.urgent{color:var(--urgent);background:var(--urgent-ground);font-weight:700;padding:.1rem .5rem;
  border-radius:.25rem}
 .p-row{display:grid;grid-template-columns:9rem 9rem minmax(0,1fr) 14rem;column-gap:1rem;align-items:start}
-.p-name{font-weight:600;line-height:1.35}
+.stApp .p-name{font-size:1rem;font-weight:600;line-height:1.35;margin:0;padding:0}
 .p-value{font-size:1.375rem;font-weight:600;line-height:1.2}
 .p-small{font-size:.8125rem;color:var(--muted);line-height:1.4}
 .p-why{font-size:.9375rem;line-height:1.4}
@@ -43,8 +48,13 @@ button[data-testid="stBaseButton-tertiary"],
 .st-key-p-type,.st-key-p-import{max-width:48rem}
 .p-kept{border-left:3px solid var(--accent);padding:.15rem .75rem;font-size:.9375rem}
 @media (max-width:640px){
+ button kbd{display:none}
+ [data-testid="stSidebarNavLink"]{min-height:2.75rem}
+ [data-testid="stNumberInput"] button{min-width:2.5rem}
+ .p-foot summary{padding:.75rem 0}
  [data-testid="stButtonGroup"] button{min-height:2.5rem}
- [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem}
+ [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem;margin-top:-.75rem}
+ .st-key-p-acts-last{margin-top:0}
  [class*="st-key-p-acts-"] button{min-height:2.75rem}
  .stMainBlockContainer{padding-left:.875rem;padding-right:.875rem}
  .p-row{grid-template-columns:minmax(0,1fr) auto;row-gap:.35rem}
