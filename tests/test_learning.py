@@ -245,6 +245,16 @@ def test_five_readings_in_one_sitting_count_less_than_on_five_days() -> None:
     assert alone.own_share < in_one_sitting.own_share < on_five_days.own_share
 
 
+def test_readings_all_round_the_clock_count_as_many_days() -> None:
+    history = straight_to(1600.0)
+    daily, all_round_the_clock = (
+        taught(history, 240.0 + np.arange(0.0, 240.0, every_h), np.full(round(240 / every_h), 96.5))
+        for every_h in (24.0, 5.0)
+    )
+    assert all_round_the_clock.breathing.sd < daily.breathing.sd
+    assert all_round_the_clock.own_share > daily.own_share
+
+
 def test_parts_of_an_own_range_add_up() -> None:
     at_h = np.arange(1, 11) * 24.0
     person = taught(straight_to(0.0), at_h, np.full(10, 96.0))

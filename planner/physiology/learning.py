@@ -29,7 +29,7 @@ from planner.physiology.ventilation import _chain, _target
 REFERENCE_ELEVATION_M: Final = 2300.0
 REFERENCE_DAYS: Final = 2.0
 HIGH_ELEVATION_M: Final = 1500.0
-# Readings closer together than this share one day's shift: judgement.
+# Readings within this time of the first of them share one day's shift: judgement.
 SAME_DAY_H: Final = 6.0
 PLANNING_PRESSURE_SD_HPA: Final = 2.0
 
@@ -168,12 +168,26 @@ def _misses(
     day, noise, pressure = _scatter_variances(chain, np.asarray(pressure_sd_hpa), population)
     shared = (day + pressure)[COARSE_BREATHING.size // 2]
     single = noise[COARSE_BREATHING.size // 2]
-    cluster = np.cumsum(np.diff(at_h, prepend=at_h[:1]) > SAME_DAY_H)
-    together = np.bincount(cluster)[cluster] if cluster.size else cluster
+    together = _read_together(at_h)
     weight = (shared + single) / (together * shared + single)
     miss = readings - chain.saturation
     sd = np.sqrt(day + noise + pressure)
     return miss.astype(np.float32), sd.astype(np.float32), weight.astype(np.float32)
+
+
+def _read_together(at_h: FloatArray) -> NDArray[np.intp]:
+    """How many readings share the day's shift with each one, itself included, (n,); ascending hours.
+
+    Counted from the first of them, not from one to the next: somebody who measures every few hours all week
+    would otherwise have measured on one day.
+    """
+    sitting = np.empty(at_h.size, dtype=np.intp)
+    first_h, number = -np.inf, -1
+    for i, hour in enumerate(at_h.tolist()):
+        if hour - first_h > SAME_DAY_H:
+            first_h, number = hour, number + 1
+        sitting[i] = number
+    return np.asarray(np.bincount(sitting)[sitting] if at_h.size else sitting)
 
 
 def _log_likelihood(
