@@ -147,12 +147,12 @@ def limit_failures(outlook: RoundOutlook, spent: Costs, limits: Limits) -> list[
         found.append(f"Body clock {offset:.1f} h off on race day, {asked}.")
     if landed is not None and landed < limits.shortest_landing_to_session_h:
         found.append(
-            f"{landed:.0f} h from landing to the first session,"
+            f"{landed:.1f} h from landing to the first session,"
             f" at least {limits.shortest_landing_to_session_h:g} h are asked."
         )
     if spent.longest_travel_h_per_day > limits.longest_travel_h_per_day:
         found.append(
-            f"{spent.longest_travel_h_per_day:.0f} h of travel in one day,"
+            f"{spent.longest_travel_h_per_day:.1f} h of travel in one day,"
             f" at most {limits.longest_travel_h_per_day:g} h are asked."
         )
     if limits.most_nights_away is not None and spent.nights_away > limits.most_nights_away:

@@ -2,20 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import asdict, dataclass, replace
 from datetime import date, datetime
 from typing import Final, Literal, TypeAlias
 
 from planner.errors import InputError, NotFoundError
 from planner.season.arrival import Option, arrival_options
-from planner.season.arrival_ways import Gap, gap_before
+from planner.season.arrival_ways import Gap, Kind, gap_before
 from planner.season.constraints import Limits, local_date
 from planner.season.evaluate import RoundPoint, Setting, round_point
 from planner.season.itinerary import Fixed, Itinerary, ends_at, fixed_points, starts_at
 from planner.season.model import Driver, Leg, Place, Round, Stay
 from planner.season.travel import LegTimes
 from planner.services.driver import driver_view
-from planner.services.limits import season_limits
+from planner.services.limits import keep_limits, kept_limits, season_limits
 from planner.services.season import Calendar, read_calendar
 from planner.services.workspace import now
 from planner.store.store import Store
@@ -32,6 +32,8 @@ ORDERS: Final[tuple[Order, ...]] = (
     "most SpO2 on race morning",
 )
 ORDER_SETTING: Final = "order of the ways to a round"
+# Where nothing lies high, that these are not to be had is no news.
+HIGH_GROUND_KINDS: Final[tuple[Kind, ...]] = ("half-way stop", "tent at home", "sleep lower")
 
 
 @dataclass(frozen=True)
@@ -95,6 +97,8 @@ def arrival(
     asked = season_limits(store) if limits is None else limits
     by = kept_order(store) if order is None else order
     options = arrival_options(itinerary, point, fixed, setting, asked, lower_bed_m=lower_bed_m)
+    if not calendar.is_high(given):
+        options = [o for o in options if o.itinerary is not None or o.kind not in HIGH_GROUND_KINDS]
     if point.first_session_at > at:
         options = [_not_in_the_past(each, itinerary, at, setting.home.zone) for each in options]
     return Arrival(
@@ -117,6 +121,17 @@ def kept_order(store: Store) -> Order:
     """What ranks the ways that keep every limit, as the coach set it or by default."""
     kept = store.setting(ORDER_SETTING)
     return next((order for order in ORDERS if order == kept), ORDERS[0])
+
+
+def keep_asked(store: Store, limits: Limits, order: Order, *, by: str) -> None:
+    """Keep limits and order for every plan, on the screens and on the command line.
+
+    Raises: InputError naming the first limit that cannot be used; then nothing is kept.
+    """
+    asked = {key: value for key, value in asdict(limits).items() if key in kept_limits(store)}
+    with store.transaction(by):
+        keep_limits(store, {**kept_limits(store), **asked})
+        store.set_setting(ORDER_SETTING, order)
 
 
 def next_high_round(calendar: Calendar, at: datetime) -> Round | None:
