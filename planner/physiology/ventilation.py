@@ -22,7 +22,15 @@ import numpy as np
 from planner.checks import FloatArray, FloatLike, checked, like
 from planner.constants import AIR_OXYGEN_FRACTION, SEA_LEVEL_PRESSURE_HPA
 from planner.errors import InputError
-from planner.physiology.blood import LINEAR, SCALE, STANDARD_PH, po2_mmhg
+from planner.physiology.blood import (
+    STANDARD_BODY_TEMPERATURE_C,
+    STANDARD_PH,
+    _at_standard,
+    _standard_saturation_pct,
+    _standard_slope_pct_per_mmhg,
+    po2_mmhg,
+)
+from planner.physiology.oxygen import _alveolar_po2_mmhg
 from planner.physiology.oxygen import inspired_po2_mmhg as inspired_from_pressure
 from planner.physiology.population import POPULATION, Population
 
@@ -54,11 +62,6 @@ class ArterialGases:
     alveolar_po2_mmhg: FloatLike
     saturation_pct: FloatLike
     arterial_po2_mmhg: FloatLike
-
-    @property
-    def alveolar_arterial_difference_mmhg(self) -> FloatLike:
-        """Alveolar less arterial oxygen tension [mmHg]."""
-        return self.alveolar_po2_mmhg - self.arterial_po2_mmhg
 
 
 @dataclass(frozen=True)
@@ -158,6 +161,35 @@ def arterial_gases(
     )
 
 
+def resting_saturation_pct(
+    inspired_po2_mmhg: FloatLike, ventilatory_state: FloatLike, breathing: FloatLike = 0.0
+) -> FloatLike:
+    """Arterial saturation awake at rest for a state of acclimatisation: arterial_gases without the tensions.
+
+    Parameters:
+        inspired_po2_mmhg: oxygen tension of moist inspired gas [mmHg], scalar or array.
+        ventilatory_state: lasting rise of alveolar ventilation of the population [1], scalar or array.
+        breathing: how strongly the person breathes, in standard deviations between people [1], scalar or
+            array.
+    Returns:
+        Saturation [%], the common shape of the inputs.
+    Raises:
+        InputError: an input out of range.
+    Valid:
+        As arterial_gases, of which it is a third of the work.
+    Source:
+        The chain of this module with constants fitted (computed) to published rows.
+    Example:
+        >>> round(resting_saturation_pct(149.2, 0.0))
+        97
+    """
+    inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
+    state = checked("ventilatory_state", ventilatory_state)
+    strength = checked("breathing", breathing)
+    chain = _chain(inspired, state, strength, asleep=False, population=POPULATION)
+    return like(chain.saturation, inspired_po2_mmhg, ventilatory_state, breathing)
+
+
 def _is_asleep(wakefulness: str) -> bool:
     if wakefulness not in ("awake", "asleep"):
         raise InputError("wakefulness", wakefulness, "awake or asleep")
@@ -200,13 +232,10 @@ def _chain(
     )
     ph = np.minimum(PK + np.log10(bicarbonate / (CO2_SOLUBILITY_MMOL_L_PER_MMHG * paco2)), HIGHEST_PH)
     quotient = population.respiratory_quotient + population.quotient_rise * gap
-    exchanged = AIR_OXYGEN_FRACTION + (1.0 - AIR_OXYGEN_FRACTION) / quotient
-    alveolar = np.maximum(inspired - exchanged * paco2, LOWEST_ALVEOLAR_PO2_MMHG)
-    bohr = (alveolar / 26.6) ** 0.184 - 2.2
-    standard = alveolar * np.exp(-bohr * (ph - STANDARD_PH))
-    content = standard * (standard * standard + LINEAR)
-    capillary = content / (content + SCALE)
-    saturation = np.maximum(100.0 * capillary - population.venous_admixture_pct, 0.0)
-    by_tension = (3.0 * standard * standard + LINEAR) / content * capillary * (1.0 - capillary)
-    slope = 100.0 * by_tension * standard / alveolar
+    alveolar = _alveolar_po2_mmhg(inspired, paco2, np.asarray(AIR_OXYGEN_FRACTION), quotient)
+    alveolar = np.maximum(alveolar, LOWEST_ALVEOLAR_PO2_MMHG)
+    standard = _at_standard(alveolar, ph, np.asarray(STANDARD_BODY_TEMPERATURE_C))
+    saturation = np.maximum(_standard_saturation_pct(standard) - population.venous_admixture_pct, 0.0)
+    # The Bohr shift hardly changes with the tension: its derivative is left out of the slope.
+    slope = _standard_slope_pct_per_mmhg(standard) * standard / alveolar
     return _Chain(ventilation, paco2, ph, alveolar, saturation, slope)

@@ -40,7 +40,7 @@ class Limits:
     highest_risk: RiskClass = "moderate"
     largest_clock_offset_h: float | None = 3.0
     shortest_landing_to_session_h: float = 15.0
-    longest_travel_h_per_day: float = 26.0
+    longest_travel_h_per_day: float = 30.0
     most_nights_away: int | None = None
     ascent_override: str = ""
 

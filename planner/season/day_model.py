@@ -3,12 +3,12 @@
 Night `n` lies between the mornings (07:00) of day `n` and day `n + 1`. A plan names a bed for every night, or
 ON_THE_WAY. Discretised are: one place a night; a journey fills whole days, departs at 10:00 (later when that
 would arrive on the day before) and no session or appointment falls on its days; ten hours of a day by day,
-fourteen by night; air by the model atmosphere. The body clock is followed from 12 days before a race that
-limits it and counts as adapted before then: nobody needs longer, except a driver who keeps changing zones,
-for whom the offset may be wrong by what was left then less what has worn off. States and costs are not
-rounded. Within a day the true course may put a stretch of at most 24 h at another of the two places; with the
-fitted time constant upwards that moves the state by at most 16 % of the difference between their targets for
-each move, and the error shrinks by at least 4 % a day afterwards. `tests/test_day_model.py` measures it.
+fourteen by night; air by the model atmosphere. The body clock is followed over the days before a race that
+limits it, as many as any one journey needs to come within the limit, and counts as adapted before then: wrong
+only for a driver who keeps changing zones, by what was left then less what has worn off. States and costs are
+not rounded. Within a day the true course may put a stretch of at most 24 h at another of the two places; with
+the fitted time constant upwards that moves the state by at most 16 % of the difference between their targets
+for each move, and the error shrinks by at least 4 % a day afterwards. `tests/test_day_model.py` measures it.
 """
 
 from __future__ import annotations
@@ -17,13 +17,19 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from datetime import date
 from functools import cached_property, lru_cache
+from math import ceil
 from typing import Final, Literal, TypeAlias
 
 import numpy as np
 from numpy.typing import NDArray
 
 from planner.checks import FloatArray
-from planner.physiology.body_clock import clock_offset_h, remaining_offset_h
+from planner.physiology.body_clock import (
+    LED_WEST_FROM_ZONES,
+    clock_offset_h,
+    days_to_adapt,
+    remaining_offset_h,
+)
 from planner.physiology.illness import LARGEST_NIGHTLY_GAIN_M, MOST_NIGHTS_CLIMBING, SLOW_ABOVE_M
 from planner.physiology.population import POPULATION
 from planner.physiology.ventilation import ventilatory_target
@@ -34,7 +40,6 @@ NIGHT_HOURS: Final = 14.0
 MOST_NIGHTS_LOST: Final = 2
 CLOCK_SLACK_H: Final = 1e-9  # room for the rounding of sums
 IMPOSSIBLE: Final = -1
-CLOCK_DAYS: Final = 12  # the body clock is followed for so long before a race that limits it: judgement
 HIGHEST_RISK_CLASS: Final = 2
 
 Measure: TypeAlias = Literal["SpO2", "capacity"]
@@ -73,6 +78,13 @@ class DayRound:
     lowest_capacity_pct: float | None = None
     highest_risk: int = 2
     largest_clock_offset_h: float | None = None
+
+    @property
+    def clock_days(self) -> int:
+        """Days before the race within which any one journey's offset wears off down to the limit."""
+        limit = self.largest_clock_offset_h or 0.0
+        ways = (LED_WEST_FROM_ZONES, LED_WEST_FROM_ZONES - 24.0)
+        return max(ceil(float(days_to_adapt(w)) * max(1.0 - limit / abs(w), 0.0)) for w in ways) + 1
 
     @property
     def has_floor(self) -> bool:
@@ -141,7 +153,7 @@ class DayProblem:
         counts = np.zeros(self.days, dtype=bool)
         for each in self.rounds:
             if each.largest_clock_offset_h is not None:
-                counts[max(each.race_day - CLOCK_DAYS, 0) : each.race_day] = True
+                counts[max(each.race_day - each.clock_days, 0) : each.race_day] = True
         return counts
 
     @cached_property

@@ -18,7 +18,7 @@ from planner.physiology.capacity import aerobic_capacity_pct
 from planner.physiology.illness import LARGEST_START_M, planned_ascent_risk
 from planner.physiology.oxygen import inspired_po2_mmhg
 from planner.physiology.person import PersonPosterior, population_latents
-from planner.physiology.ventilation import arterial_gases, ventilatory_target
+from planner.physiology.ventilation import resting_saturation_pct, ventilatory_target
 from planner.season.arrival_ways import TENT_HOURS_PER_NIGHT, TENT_OXYGEN_FRACTION
 from planner.season.clock_course import clock_course, offset_at
 from planner.season.constraints import RISK_CLASSES, bed_refused
@@ -186,10 +186,10 @@ def race_values(
     latents = population_latents() if person is None else person.latents()
     weight = latents.weight / latents.weight.sum()
     offset_pct = float(weight @ latents.offset_mean_pct)
+    breathing = latents.breathing[:, None]
 
     def values(state: FloatArray) -> tuple[FloatArray, FloatArray]:
-        gases = arterial_gases(inspired, state, latents.breathing[:, None])
-        spo2 = weight @ np.asarray(gases.saturation_pct) + offset_pct
+        spo2 = weight @ np.asarray(resting_saturation_pct(inspired, state, breathing)) + offset_pct
         days = equivalent_days(state, target)
         return spo2, np.asarray(aerobic_capacity_pct(venue.track_elevation_m, days))
 

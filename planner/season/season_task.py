@@ -12,7 +12,7 @@ from planner.season.constraints import RISK_CLASSES, Limits, local_date
 from planner.season.day_model import Combination, Measure, Rates
 from planner.season.evaluate import RoundPoint, Setting
 from planner.season.itinerary import Fixed, Itinerary
-from planner.season.model import Place
+from planner.season.model import Place, Stay
 
 MORNING: Final = time(7)
 
@@ -71,8 +71,15 @@ class SeasonTask:
 
     @property
     def starts_at(self) -> datetime:
-        """The first morning, local at home."""
-        return utc(self.from_day, MORNING, self.setting.home)
+        """The first morning, local where the driver is, or at home when that is not known."""
+        at_home = utc(self.from_day, MORNING, self.setting.home)
+        i = self.itinerary.index_at(at_home)
+        entry = self.itinerary.entries[i] if i is not None else None
+        if isinstance(entry, Stay):
+            there = utc(self.from_day, MORNING, self.setting.places[entry.place_id])
+            if entry.arrive_at <= there < entry.depart_at:
+                return there
+        return at_home
 
     def fixed_within(self) -> list[Fixed]:
         """The fixed points that lie wholly inside."""

@@ -196,26 +196,44 @@ def _kept(heads: _Heads, clock: FloatArray, samples: FloatArray, convex: bool) -
     order = np.lexsort((-heads.state[:, -1], -heads.state[:, 0], heads.cost, *key))
     if not len(order):
         return order
-    changes = np.flatnonzero((np.diff(key[:, order], axis=1) != 0).any(axis=0)) + 1
-    groups = np.split(order, changes)
-    return np.concatenate([_undominated(g, heads, samples, convex) if len(g) > 1 else g for g in groups])
+    group = np.concatenate([[0], np.cumsum((np.diff(key[:, order], axis=1) != 0).any(axis=0))])
+    state = heads.state[order]
+    bounds = _between(state, heads.slope[order], samples) if convex else None
+    # Within a group in order of cost: the one with the highest first sample so far mostly beats what follows.
+    best = _best_before(state[:, 0], group)
+    seconds = np.flatnonzero(best >= 0)
+    no_higher = state[seconds, 0] <= state[best[seconds], 0]
+    beaten = _no_lower(state, bounds, best[seconds], seconds)
+    doubtful = np.unique(group[seconds[no_higher & ~beaten]])
+    left = np.ones(len(order), dtype=bool)
+    left[seconds[beaten]] = False
+    # Where it does not, all pairs of the group are tried.
+    for number in doubtful:
+        members = np.flatnonzero(left & (group == number))
+        left[members] = _undominated(state, bounds, members)
+    return order[left]
 
 
-def _undominated(group: IntArray, heads: _Heads, samples: FloatArray, convex: bool) -> IntArray:
-    """Of heads in order of cost, those that none before them beats or equals."""
-    state = heads.state[group]
-    low, high = state[:, 0], state[:, -1]
+def _best_before(value: FloatArray, group: IntArray) -> IntArray:
+    """Index of the highest value before each entry within its group of neighbours; -1 for the first."""
+    # Lifting each group above the ones before it makes one running maximum serve all of them.
+    lifted = value + group * (2.0 * float(np.ptp(value)) + 1.0)
+    before = np.concatenate([[-np.inf], np.maximum.accumulate(lifted)[:-1]])
+    best = np.maximum.accumulate(np.where(lifted > before, np.arange(len(value)), 0))
+    first = np.concatenate([[True], np.diff(group) > 0])
+    return np.where(first, -1, np.concatenate([[-1], best[:-1]]))
+
+
+def _undominated(
+    state: FloatArray, bounds: tuple[FloatArray, FloatArray] | None, members: IntArray
+) -> BoolArray:
+    """Of heads in order of cost, whether none before them beats or equals them."""
+    low, high = state[members, 0], state[members, -1]
     # What is no lower at both ends of the samples may be no lower everywhere; the others cannot.
-    maybe = np.triu((low[:, None] >= low) & (high[:, None] >= high), 1)
-    beaten = np.asarray(maybe.any(axis=0))
-    bounds = _between(state, heads.slope[group], samples) if convex else None
-    # The cheapest of them mostly is; where it is not, all are tried.
-    seconds = np.flatnonzero(beaten)
-    unsure = seconds[~_no_lower(state, bounds, maybe.argmax(axis=0)[seconds], seconds)]
-    beaten[unsure] = False
-    firsts, column = np.nonzero(maybe[:, unsure])
-    beaten[unsure[column[_no_lower(state, bounds, firsts, unsure[column])]]] = True
-    return group[~beaten]
+    firsts, seconds = np.nonzero(np.triu((low[:, None] >= low) & (high[:, None] >= high), 1))
+    beaten = np.zeros(len(members), dtype=bool)
+    beaten[seconds[_no_lower(state, bounds, members[firsts], members[seconds])]] = True
+    return ~beaten
 
 
 def _no_lower(
