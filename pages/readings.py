@@ -6,13 +6,13 @@ import streamlit as st
 
 from planner.ui.cached import morning_of
 from planner.ui.errors import plain_errors
+from planner.ui.file_import import draw_reading_import
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.reading_corrections import draw_corrections
 from planner.ui.reading_entry import draw_entry
-from planner.ui.reading_import import draw_import
 from planner.wording import counted
 
-PARTS = {"Type": draw_entry, "Import": draw_import, "Correct": draw_corrections}
+PARTS = {"Type": draw_entry, "Import": draw_reading_import, "Correct": draw_corrections}
 
 
 def say_where_we_are(ctx: Context) -> bool:

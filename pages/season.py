@@ -40,7 +40,7 @@ def main() -> None:
     ctx = start_page("Season")
     calendar = calendar_of(ctx)
     if not calendar.season_at(ctx.now):
-        answer("No rounds yet. Add places and rounds on Team, or read them from a file on Readings.")
+        answer("No rounds yet. Add places and rounds on Team, or bring them in from files there, under Data.")
     else:
         show_season(ctx, calendar)
     end_page(ctx)

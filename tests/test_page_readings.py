@@ -333,3 +333,7 @@ def test_an_import_is_shown_before_it_is_taken(demo_store: Store) -> None:
     assert not at.error
     assert len(demo_store.readings()) == kept + 1
     assert first_line(at) == "8 of 8 drivers measured today."
+    at = press(at, "Undo the import")
+    assert not at.error
+    assert len(demo_store.readings()) == kept
+    assert first_line(at) == "7 of 8 drivers measured today."

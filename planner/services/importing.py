@@ -19,6 +19,7 @@ from planner.season.model import Driver, Place, Round, Session, Stay
 from planner.services.workspace import FROZEN_CLOCK
 from planner.store.store import Store
 
+READINGS_KIND: Final = READINGS.name
 DEMO_BY: Final = "demo"
 DEMO_CLOCK_FILE: Final = "clock.csv"
 
@@ -33,6 +34,7 @@ class ImportReport:
     already_there: int
     refused: tuple[RefusedLineError, ...]  # every fault; a line may have several
     notes: tuple[str, ...]  # what the user should know about how the file was read
+    change_set_id: int | None = None  # by which an import can be taken back; None in a preview
 
     @property
     def taken(self) -> int:
@@ -70,20 +72,20 @@ def import_file(
     file_kind = kind_called(kind) if kind else recognised(data, file)
     context = _context(store, now)
     parsed = read_records(file_kind, data, file, context)
-    with store.transaction(by, f"import of {file}"):
+    with store.transaction(by, f"import of {file}") as change_set_id:
         report = _sorted_out(store, file_kind, parsed, context, file, by)
         kept = store.add_all(report.records, by=by)
-    return replace(report, records=tuple(kept))
+    return replace(report, records=tuple(kept), change_set_id=change_set_id)
 
 
 def preview_readings(store: Store, data: bytes, file: str, by: str, now: datetime) -> ImportReport:
     """Tell what an import of a file of readings would do; writes nothing."""
-    return preview_file(store, data, file, by=by, now=now, kind=READINGS.name)
+    return preview_file(store, data, file, by=by, now=now, kind=READINGS_KIND)
 
 
 def import_readings(store: Store, data: bytes, file: str, by: str, now: datetime) -> ImportReport:
     """Import the good lines of a file of readings in one transaction."""
-    return import_file(store, data, file, by=by, now=now, kind=READINGS.name)
+    return import_file(store, data, file, by=by, now=now, kind=READINGS_KIND)
 
 
 def demo_folder() -> Path:

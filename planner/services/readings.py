@@ -181,7 +181,7 @@ def correction_words(change: Change, zone: str) -> str:
 
 def reading_words(reading: Reading, zone: str) -> str:
     """A reading on one line: "Sat 6 Jun, 07:02: 92 %, pulse 62/min, awake"."""
-    parts = [per_cent(reading.spo2_pct)]
+    parts = [per_cent(reading.spo2_pct, 0 if reading.spo2_pct == round(reading.spo2_pct) else 1)]
     if reading.pulse_bpm is not None:
         parts.append(f"pulse {pulse(reading.pulse_bpm)}")
     parts.append(reading.wakefulness)

@@ -21,6 +21,7 @@ button[data-testid="stBaseButton-tertiary"],
 [class*="st-key-p-acts-"]{gap:0}
 [class*="st-key-p-acts-"] button{min-height:1.75rem;padding:0}
 .st-key-p-acts-last{gap:1.25rem}
+.st-key-p-card-correct,.st-key-p-card-ill{margin-bottom:0;padding-bottom:.9rem}
 .stApp a[aria-current="page"]{background:color-mix(in srgb,var(--accent) 14%,transparent)}
 [data-testid="stExpandSidebarButton"]{min-height:2.75rem;min-width:5.5rem;color:var(--accent)}
 [data-testid="stExpandSidebarButton"]::after{content:"Menu";font-size:.9375rem}
@@ -48,7 +49,8 @@ button[data-testid="stBaseButton-tertiary"],
 .st-key-p-type,.st-key-p-import{max-width:48rem}
 .p-kept{border-left:3px solid var(--accent);padding:.15rem .75rem;font-size:.9375rem}
 @media (max-width:640px){
- button kbd{display:none}
+ .stApp button kbd{display:none}
+ [data-testid="stCheckbox"] label{min-height:2.5rem}
  [data-testid="stSidebarNavLink"]{min-height:2.75rem}
  [data-testid="stNumberInput"] button{min-width:2.5rem}
  .p-foot summary{padding:.75rem 0}

@@ -19,6 +19,7 @@ from planner.services.limits import (
 from planner.services.team import backup_bytes, begin_own_team
 from planner.services.workspace import is_empty
 from planner.ui.errors import plain_errors
+from planner.ui.file_import import draw_season_import
 from planner.ui.page import Context, line, note_for_next_run
 from planner.ui.tables import note, table
 
@@ -70,6 +71,7 @@ def draw_store(ctx: Context) -> None:
     """Where the data lie, a copy of them, and the way into and out of the demo season."""
     line(f"Everything is kept in {ctx.store.path}.")
     note("Another file: start the program with --store PATH, or set PLANNER_STORE.")
+    draw_season_import(ctx)
     st.download_button(
         "Download a backup",
         data=lambda: backup_bytes(ctx.store),
