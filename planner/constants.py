@@ -20,3 +20,7 @@ BODY_WATER_VAPOUR_MMHG: Final = 47.0
 AIR_OXYGEN_FRACTION: Final = 0.2094  # dry air; published values run from 0.2093 to 0.2095
 
 ZERO_CELSIUS_K: Final = 273.15
+HOURS_PER_DAY: Final = 24.0
+
+# Standard deviations on either side of the mean that hold 95 % of a normal distribution (any table).
+DEVIATIONS_95: Final = 1.96

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Final, get_args
+from typing import Final
 
 from planner.exchange.context import FileContext
 from planner.exchange.kinds import FileKind
@@ -13,14 +13,13 @@ from planner.exchange.times import WANTED as A_TIME
 from planner.hydration.model import CockpitConditions, MorningMark, Weighing
 from planner.hydration.validation import WEIGHING_CLOTHES
 from planner.hydration.validation import problems as hydration_problems
-from planner.monitoring.model import Notice, NoticeKind, SickPeriod
+from planner.monitoring.model import Notice, SickPeriod
+from planner.monitoring.validation import NOTICE_KINDS
 from planner.monitoring.validation import problems as monitoring_problems
 from planner.season.model import Session
 
 # These records know no place; a file may name one all the same, whose wall clock its times then are.
 _WHERE: Final = Column("place", "the place whose clock the times are read from, unless they have an offset")
-
-NOTICE_KINDS: Final = get_args(NoticeKind)
 
 
 def _zone_in(line: Line, context: FileContext) -> str | None:

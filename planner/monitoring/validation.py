@@ -6,8 +6,8 @@ from collections.abc import Callable
 from typing import Any, get_args
 
 from planner.errors import InputError
-from planner.monitoring.model import Circumstance, Notice, Reading, SickPeriod, Wakefulness
-from planner.physiology.illness import EMERGENCY_SIGNS
+from planner.monitoring.model import Circumstance, Notice, NoticeKind, Reading, SickPeriod, Wakefulness
+from planner.physiology.illness import EMERGENCY_SIGNS, HIGHEST_ITEM
 from planner.record_checks import (
     Problem,
     after,
@@ -24,9 +24,7 @@ from planner.record_checks import (
 
 WAKEFULNESSES = get_args(Wakefulness)
 CIRCUMSTANCES = get_args(Circumstance)
-NOTICE_KINDS = ("told the physician", "note")
-
-LAKE_LOUISE_WORST = 3
+NOTICE_KINDS = get_args(NoticeKind)
 
 
 def _reading(r: Reading) -> tuple[Problem, ...]:
@@ -42,10 +40,10 @@ def _reading(r: Reading) -> tuple[Problem, ...]:
         flag("warm_hand", r.warm_hand),
         text("quality_note", r.quality_note),
         words("emergency_signs", r.emergency_signs, EMERGENCY_SIGNS),
-        whole("headache", r.headache, 0, LAKE_LOUISE_WORST, optional=True),
-        whole("gut", r.gut, 0, LAKE_LOUISE_WORST, optional=True),
-        whole("fatigue", r.fatigue, 0, LAKE_LOUISE_WORST, optional=True),
-        whole("dizziness", r.dizziness, 0, LAKE_LOUISE_WORST, optional=True),
+        whole("headache", r.headache, 0, HIGHEST_ITEM, optional=True),
+        whole("gut", r.gut, 0, HIGHEST_ITEM, optional=True),
+        whole("fatigue", r.fatigue, 0, HIGHEST_ITEM, optional=True),
+        whole("dizziness", r.dizziness, 0, HIGHEST_ITEM, optional=True),
         text("left_out", r.left_out),
         text("entered_by", r.entered_by),
     )

@@ -16,11 +16,11 @@ from typing import Final
 import numpy as np
 
 from planner.checks import FloatArray, FloatLike, checked, like
+from planner.constants import HOURS_PER_DAY
 from planner.errors import InputError
 from planner.physiology.population import POPULATION, Population
 from planner.physiology.ventilation import _target
 
-HOURS_PER_DAY: Final = 24.0
 # Columns of one block: its states and targets stay in the processor's cache.
 BLOCK: Final = 4096
 

@@ -88,12 +88,24 @@ def po2_mmhg(
 
 
 def _saturation_pct(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:
-    return _standard_saturation_pct(tension * np.exp(-_log_shift(tension, acidity, temperature)))
+    return _standard_saturation_pct(_at_standard(tension, acidity, temperature))
+
+
+def _at_standard(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:
+    """The tension of equal saturation at pH 7.4 and 37 C."""
+    return np.asarray(tension * np.exp(-_log_shift(tension, acidity, temperature)))
 
 
 def _standard_saturation_pct(tension: FloatArray) -> FloatArray:
     content = tension * (tension * tension + LINEAR)
     return 100.0 * content / (content + SCALE)
+
+
+def _standard_slope_pct_per_mmhg(tension: FloatArray) -> FloatArray:
+    """Derivative of _standard_saturation_pct by the tension."""
+    square = tension * tension
+    content = tension * (square + LINEAR)
+    return 100.0 * SCALE * (3.0 * square + LINEAR) / (content + SCALE) ** 2
 
 
 def _standard_po2_mmhg(saturation: FloatArray) -> FloatArray:
@@ -104,13 +116,11 @@ def _standard_po2_mmhg(saturation: FloatArray) -> FloatArray:
 def _log_shift(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:
     """ln of the tension here over the tension of equal saturation at pH 7.4 and 37 C."""
     off_ph, off_temperature = acidity - STANDARD_PH, temperature - STANDARD_BODY_TEMPERATURE_C
-    shift = np.zeros(np.broadcast_shapes(acidity.shape, temperature.shape))
     # Each power costs as much as the rest of the curve: not taken where all blood is at the standard.
-    if off_ph.any():
-        shift = shift + ((tension / 26.6) ** 0.184 - 2.2) * off_ph
-    if off_temperature.any():
-        shift = shift + (0.058 / ((0.00243 * tension) ** 3.88 + 1.0) + 0.013) * off_temperature
-    return shift
+    by_ph = ((tension / 26.6) ** 0.184 - 2.2) * off_ph if off_ph.any() else off_ph
+    if not off_temperature.any():
+        return by_ph + off_temperature
+    return by_ph + (0.058 / ((0.00243 * tension) ** 3.88 + 1.0) + 0.013) * off_temperature
 
 
 def _log_shift_slope(tension: FloatArray, acidity: FloatArray, temperature: FloatArray) -> FloatArray:

@@ -12,10 +12,11 @@ from typing import Final
 import numpy as np
 
 from planner.checks import FloatArray, FloatLike, like
-from planner.constants import AIR_OXYGEN_FRACTION, BODY_WATER_VAPOUR_MMHG, HPA_PER_MMHG
+from planner.constants import HOURS_PER_DAY
 from planner.errors import InputError
 from planner.physiology.acclimatisation import ExposureHistory, _first_order_at
 from planner.physiology.air import _standard_elevation_m
+from planner.physiology.oxygen import _plain_air_pressure_hpa
 
 # Plasma volume: about -6 % after a day at 2500 m and -1 % for each 500 m more (Beidleman 2017, n=393,
 # published), still falling to day 7; a time constant of one day and nothing below 1000 m are judgement.
@@ -36,7 +37,6 @@ HAEMOGLOBIN_TIME_D: Final = 30.0
 HAEMOGLOBIN_SD_PCT: Final = 2.0
 
 METRES_PER_KM: Final = 1000.0
-HOURS_PER_DAY: Final = 24.0
 
 
 def plasma_volume_change_pct(history: ExposureHistory, at_h: FloatLike) -> FloatLike:
@@ -112,5 +112,4 @@ def altitude_dose_km_h(history: ExposureHistory, from_h: float, to_h: float) -> 
 
 def _equivalent_m(inspired_mmhg: FloatArray) -> FloatArray:
     """Elevation at which the standard atmosphere has this inspired oxygen, zero below sea level."""
-    pressure = HPA_PER_MMHG * (inspired_mmhg / AIR_OXYGEN_FRACTION + BODY_WATER_VAPOUR_MMHG)
-    return np.maximum(_standard_elevation_m(pressure), 0.0)
+    return np.maximum(_standard_elevation_m(_plain_air_pressure_hpa(inspired_mmhg)), 0.0)

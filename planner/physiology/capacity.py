@@ -7,6 +7,7 @@ from typing import Final
 import numpy as np
 
 from planner.checks import FloatArray, FloatLike, checked, like
+from planner.constants import DEVIATIONS_95
 
 # Loss on arrival, LINEAR x + QUADRATIC x^2 per cent, x in km: least squares (computed) through the line of
 # Wehrlin & Hallen over its 0.3-2.8 km and the unacclimatised curve of Bassett over 0-4.5 km, one point per
@@ -23,9 +24,8 @@ GAIN_SCALE: Final = 1.2
 GAIN_TIME_CONSTANT_D: Final = 7.8
 
 # Spread between people of the loss on arrival, as a share of it (judgement, from individual falls of 4.6 to
-# 7.5 % per 1000 m among eight athletes, from memory), and the standard deviations in a 95 % range.
+# 7.5 % per 1000 m among eight athletes, from memory).
 LOSS_SD_SHARE: Final = 0.2
-DEVIATIONS_95: Final = 1.96
 
 
 def aerobic_capacity_pct(elevation_m: FloatLike, days: FloatLike = 0.0) -> FloatLike:

@@ -20,6 +20,8 @@ from planner.physiology.ventilation import Wakefulness, _Chain, _chain, _is_asle
 LOW_PROBABILITY: Final = 0.025
 HIGH_PROBABILITY: Final = 0.975
 HIGHEST_READING_PCT: Final = 100.0
+# How unsure the pressure of a reading is taken to be where nobody says it, standard deviation: judgement.
+PLANNING_PRESSURE_SD_HPA: Final = 2.0
 # A node below this weight cannot move a 2.5 % quantile by a hundredth of a point.
 NEGLIGIBLE_WEIGHT: Final = 1e-7
 # The published rows behind the fit end near 5000 m (75 mmHg); a few mmHg more for a low-pressure day.
@@ -58,7 +60,7 @@ def expected_spo2(
     wakefulness: Wakefulness = "awake",
     person: PersonPosterior | None = None,
     device: str | None = None,
-    pressure_sd_hpa: FloatLike = 2.0,
+    pressure_sd_hpa: FloatLike = PLANNING_PRESSURE_SD_HPA,
 ) -> Expectation:
     """Distribution of an oximeter reading at rest at some instants of a history.
 

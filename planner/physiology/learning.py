@@ -19,7 +19,7 @@ from planner.checks import QUANTITIES, FloatArray, checked
 from planner.errors import InputError
 from planner.physiology.acclimatisation import _relaxed
 from planner.physiology.air import standard_pressure_hpa
-from planner.physiology.expectation import _scatter_variances
+from planner.physiology.expectation import PLANNING_PRESSURE_SD_HPA, _scatter_variances
 from planner.physiology.oxygen import inspired_po2_mmhg as inspired_from_pressure
 from planner.physiology.person import Estimate, Latents, PersonPosterior, population_latents
 from planner.physiology.population import POPULATION, Population
@@ -31,7 +31,6 @@ REFERENCE_DAYS: Final = 2.0
 HIGH_ELEVATION_M: Final = 1500.0
 # Readings within this time of the first of them share one day's shift: judgement.
 SAME_DAY_H: Final = 6.0
-PLANNING_PRESSURE_SD_HPA: Final = 2.0
 
 COARSE_BREATHING: Final = np.linspace(-3.6, 3.6, 13)
 FINE_BREATHING: Final = np.linspace(-3.6, 3.6, 81)

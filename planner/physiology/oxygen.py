@@ -108,7 +108,7 @@ def equivalent_elevation_m(inspired_po2_mmhg: FloatLike, latitude_deg: FloatLike
     inspired = checked("inspired_po2_mmhg", inspired_po2_mmhg)
     latitude = checked("latitude_deg", latitude_deg)
     inspired, latitude = np.broadcast_arrays(inspired, latitude)
-    pressure = HPA_PER_MMHG * (inspired / AIR_OXYGEN_FRACTION + BODY_WATER_VAPOUR_MMHG)
+    pressure = _plain_air_pressure_hpa(inspired)
     lowest, highest = QUANTITIES["elevation_m"].low, QUANTITIES["elevation_m"].high
     low = np.full(inspired.shape, lowest)
     high = np.full(inspired.shape, highest)
@@ -145,7 +145,9 @@ def paco2_mmhg(elevation_m: FloatLike, days: FloatLike) -> FloatLike:
         InputError: an elevation or a time out of range.
     Valid:
         0 to 5000 m. Below 327 m the published lines cross (by at most 0.5 mmHg at sea level, within their
-        scatter). People differ by 2.3 to 2.7 mmHg (standard deviation).
+        scatter). People differ by 2.3 to 2.7 mmHg (standard deviation). Lines for a check and for rough work:
+        what the screens and commands show is the fitted planner.physiology.ventilation, whose PaCO2 follows
+        the by-day measurements and lies up to 4 mmHg higher on arrival.
     Source:
         Vazquez & Perez-Padilla 2000 (published lines); time constant computed from the by-day rows of
         Wachsmuth 2013, Br J Sports Med 47:i93.
@@ -160,6 +162,11 @@ def paco2_mmhg(elevation_m: FloatLike, days: FloatLike) -> FloatLike:
 
 def _inspired_po2_mmhg(pressure: FloatArray, fraction: FloatArray) -> FloatArray:
     return fraction * (pressure / HPA_PER_MMHG - BODY_WATER_VAPOUR_MMHG)
+
+
+def _plain_air_pressure_hpa(inspired: FloatArray) -> FloatArray:
+    """Pressure at which plain air gives an inspired tension: the inverse of _inspired_po2_mmhg."""
+    return HPA_PER_MMHG * (inspired / AIR_OXYGEN_FRACTION + BODY_WATER_VAPOUR_MMHG)
 
 
 def _alveolar_po2_mmhg(

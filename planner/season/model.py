@@ -8,10 +8,12 @@ from dataclasses import dataclass
 from datetime import date, datetime
 from typing import Literal, TypeAlias
 
+# The classes of the published table of planned ascents; handed on with the records that hold one.
+from planner.physiology.illness import AltitudeHistory as AltitudeHistory
+
 Sex: TypeAlias = Literal["woman", "man"]
 SessionKind: TypeAlias = Literal["practice", "qualifying", "race"]
 TravelMode: TypeAlias = Literal["road", "flight"]
-AltitudeHistory: TypeAlias = Literal["none or mild", "moderate or severe", "lung or brain oedema"]
 
 
 @dataclass(frozen=True)
