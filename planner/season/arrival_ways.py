@@ -96,7 +96,7 @@ def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], 
         # The plan may already leave on the evening before; what is planned can be kept.
         start = base.index_at(bound.ends_at - timedelta(minutes=1))
         if start is not None and base.entries[start].depart_at <= free_from:
-            free_from = max(bound.ends_at, base.entries[start].depart_at - timedelta(minutes=1))
+            free_from = max(bound.ends_at, base.entries[start].depart_at)
     entry = base.entries[start] if start is not None else None
     if not isinstance(entry, Stay) or free_from >= point.first_session_at:
         raise InputError("round", point.name, f"a round with free time before it; {since} leaves none")
