@@ -226,3 +226,15 @@ def test_limits_refuse_nonsense() -> None:
 def test_a_driver_is_needed_only_for_the_place_of_home() -> None:
     assert isinstance(setting().driver, Driver)
     assert setting().home == HOME
+
+
+def test_a_flight_west_by_day_costs_no_night() -> None:
+    # 19 h from 10:00 in Berlin: the small hours there pass in the air, but the evening ends in bed in Lima.
+    leave = datetime(2031, 4, 20, 8, tzinfo=UTC)
+    leg = Leg(7, HOME.id, PUNA.id, leave, leave + timedelta(hours=19), "flight")
+    home = Stay(7, HOME.id, leave - timedelta(days=2), leave)
+    trip = Itinerary(7, (home, leg, Stay(7, PUNA.id, leg.arrive_at, leg.arrive_at + timedelta(days=2))))
+    nights = nights_of(trip, PLACES, home.arrive_at, leg.arrive_at + timedelta(days=2))
+    assert [(n.evening.day, n.place_id) for n in nights] == [
+        (18, HOME.id), (19, HOME.id), (20, PUNA.id), (21, PUNA.id)
+    ]  # fmt: skip

@@ -77,12 +77,26 @@ class DaySeason:
                 visits.append(self._visit(night, before, bed, lost))
             before, lost = bed, 0
         last = self.problem.beds[before]
+        visits = self._with_kept(visits)
         end = utc(task.until_day, time(23, 59), places[last.place_id])
         if not visits:
             visits.append(Visit(last.place_id, task.starts_at + timedelta(minutes=1)))
         return replace_between(
             task.itinerary, task.starts_at, end, visits, task.setting.times, task.fixed_within()
         )
+
+    def _with_kept(self, visits: list[Visit]) -> list[Visit]:
+        """The visits with those of the kept stretches as the present itinerary has them, to the minute."""
+        kept = self.task.kept
+        if not kept:
+            return visits
+        now = [
+            Visit(s.place_id, s.arrive_at, s.bed_elevation_m, s.tent_oxygen_fraction, s.tent_hours_per_night)
+            for s in self.task.itinerary.stays
+            if any(begin < s.arrive_at < end for begin, end in kept)
+        ]
+        others = [v for v in visits if not any(begin < v.arrive_at < end for begin, end in kept)]
+        return sorted((*others, *now), key=lambda v: v.arrive_at)
 
     def _visit(self, night: int, before: int, bed: int, lost: int) -> Visit:
         here = self.problem.beds[bed]

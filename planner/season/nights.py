@@ -66,7 +66,9 @@ def nights_of(
             if max(start, from_at) <= middle < until:
                 found.append(_night(entry, place, morning - ONE_DAY, middle))
             morning += ONE_DAY
-    return found
+    # Flying west by day the small hours of the start pass on the way, and those of the goal in bed there.
+    in_bed = {night.evening for night in found if night.place_id is not None}
+    return [night for night in found if night.place_id is not None or night.evening not in in_bed]
 
 
 def ascent_to(nights: Sequence[Night], home: Place) -> Ascent:

@@ -46,7 +46,9 @@ class SeasonTask:
     """One driver's season to be searched, from the morning of `from_day` to the night of `until_day`.
 
     `candidates` are places where free nights may be spent, besides home and the fixed places before and
-    after; `wishes` by round. `tent` lets nights at home be spent in a tent if the physician's note allows it.
+    after; `wishes` by round. `kept` are stretches whose stays are taken over from the present itinerary as
+    they are; their nights should be locked. `tent` lets nights at home be spent in a tent if the physician's
+    note allows it.
     """
 
     setting: Setting
@@ -60,6 +62,7 @@ class SeasonTask:
     rules: Limits = field(default_factory=Limits)
     rates: Rates = field(default_factory=Rates)
     locks: tuple[Lock, ...] = ()
+    kept: tuple[tuple[datetime, datetime], ...] = ()
     tent: bool = True
     measure: Measure = "SpO2"
     combination: Combination = "weighted sum"

@@ -189,7 +189,8 @@ def season_task(store: Store, driver: Driver, question: Question) -> SeasonTask:
         measure=question.measure,
         combination=question.combination,
     )
-    return replace(task, locks=tuple(_locks(task, question.kept_rounds)))
+    kept = _kept_stretches(task, question.kept_rounds)
+    return replace(task, kept=tuple(kept), locks=tuple(_locks(task, kept)))
 
 
 def search_season(
@@ -310,16 +311,21 @@ def _last_day(
     raise InputError("plan", setting.driver.name, "a way home after the last round")
 
 
-def _locks(task: SeasonTask, kept_rounds: tuple[int, ...]) -> list[Lock]:
-    """The nights before each round that is to stay as planned, a lock for every night at a place."""
-    found: list[Lock] = []
+def _kept_stretches(task: SeasonTask, kept_rounds: tuple[int, ...]) -> list[tuple[datetime, datetime]]:
+    """The free time before each round whose way is to stay as it is planned."""
+    found = []
     begin = task.starts_at
     for point in task.fixed_within():
         if point.round_id in kept_rounds:
-            nights = nights_of(task.itinerary, task.setting.places, begin, point.starts_at)
-            found += [Lock(n.evening, n.evening, n.place_id) for n in nights if n.place_id is not None]
+            found.append((begin, point.starts_at))
         begin = point.ends_at
     return found
+
+
+def _locks(task: SeasonTask, kept: list[tuple[datetime, datetime]]) -> list[Lock]:
+    """The nights of the kept stretches that are spent at a place, as the present plan has them."""
+    nights = [n for begin, end in kept for n in nights_of(task.itinerary, task.setting.places, begin, end)]
+    return [Lock(n.evening, n.evening, n.place_id) for n in nights if n.place_id is not None]
 
 
 def _nights_words(itinerary: Itinerary, begin: datetime, end: datetime, task: SeasonTask) -> str:
