@@ -12,6 +12,7 @@ from planner.ui.page import Context, answer, end_page, line, start_page, you_for
 from planner.ui.team_forms import commitment_form, driver_form, place_form, round_form, session_form
 from planner.ui.team_records import RecordList, draw_records
 from planner.ui.team_settings import draw_limits, draw_store
+from planner.ui.team_stays import draw_stays
 from planner.ui.text import literal
 from planner.wording import (
     DASH,
@@ -178,6 +179,7 @@ PARTS = {
     "Places": draw_places,
     "Rounds": draw_rounds,
     "Commitments": draw_commitments,
+    "Stays": draw_stays,
     "Limits": draw_limits,
     "Units": draw_units,
     "Data": draw_store,
