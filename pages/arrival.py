@@ -10,7 +10,7 @@ from planner.services.season import Calendar
 from planner.ui.arrival_cached import Asked, arrival_of
 from planner.ui.arrival_limits import draw_limits
 from planner.ui.arrival_parts import draw_all, draw_days, draw_ways
-from planner.ui.arrival_words import headline, round_words
+from planner.ui.arrival_words import headline, planned_words, round_words
 from planner.ui.cached import calendar_of
 from planner.ui.errors import plain_errors
 from planner.ui.page import Context, answer, end_page, line, start_page
@@ -67,7 +67,8 @@ def show_arrival(ctx: Context, calendar: Calendar) -> None:
             answer(f"{asked.driver.name} to {asked.round.name}: no way can be worked out.")
             return
     fit = sum(option.feasible for option in found.options)
-    line(f"{counted(len(found.options), 'way')}: {fit} keep every limit.")
+    keep = "keeps" if fit == 1 else "keep"
+    line(f"{counted(len(found.options), 'way')}: {fit} {keep} every limit. {planned_words(found)}")
     option = draw_ways(ctx, asked, found)
     draw_days(ctx, asked, found, option)
     draw_all(found)

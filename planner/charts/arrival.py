@@ -15,8 +15,8 @@ from planner.charts.season import elevation_steps
 from planner.charts.spec import as_text, named, with_data
 from planner.charts.theme import Mode, colour, dressed
 
-HEIGHT: Final = 300
-STRIP_HEIGHT: Final = 230
+HEIGHT: Final = 380
+STRIP_HEIGHT: Final = 260
 PICKED: Final = "picked"  # the name under which the chart tells which way was pressed
 EASY_TO_HIT: Final = 420  # area of the invisible mark around a way, for a thumb
 # Ways that cost the same nights stand side by side, so far apart, within this much of a night.
@@ -95,7 +95,9 @@ def _trade_off(low: int, high: int, fewest: int, most: int, mode: Mode) -> str:
         scale=alt.Scale(domain=[fewest - 0.6, most + 0.6], nice=False, zero=False),
         axis=alt.Axis(values=list(range(fewest, most + 1)), format="d", grid=False, labelOverlap=True),
     )
-    y = _saturation("SpO2 on race morning, %", [low, high], list(range(low, high + 1)), "middle")
+    step = 5 if high - low > TICKED_BY_FIVES else 2
+    ticks = [value for value in range(low, high + 1) if value % step == 0]
+    y = _saturation("SpO2 on race morning, %", [low, high], ticks, "middle")
     chosen = alt.datum["chosen"]
     paint = alt.condition(chosen, alt.value(colour("accent", mode)), alt.value(colour("text", mode)))
     dashed: dict[str, Any] = {"color": colour("muted", mode), "strokeDash": [4, 3], "strokeWidth": 1}
@@ -130,12 +132,11 @@ def _trade_off(low: int, high: int, fewest: int, most: int, mode: Mode) -> str:
 
 
 def _saturation(
-    title: str, domain: list[float], values: list[int], anchor: Literal["middle", "end"]
+    title: str, domain: list[float], ticks: list[int], anchor: Literal["middle", "end"]
 ) -> Callable[[str], alt.Y]:
     """The axis of saturation, for whichever column is drawn on it."""
-    step = 5 if len(values) > TICKED_BY_FIVES else 2
     scale = alt.Scale(domain=domain, nice=False, zero=False)
-    axis = alt.Axis(values=[v for v in values if v % step == 0], titleAnchor=anchor, title=title)
+    axis = alt.Axis(values=ticks, titleAnchor=anchor, title=title)
     return lambda column: alt.Y(f"{column}:Q", scale=scale, axis=axis, title=title)
 
 
@@ -156,17 +157,16 @@ def days_chart(
 @lru_cache(maxsize=64)
 def _days(lowest_pct: int, lowest: float, highest: float, unit: str, mode: Mode) -> str:
     x = alt.X(
-        "at:T",
+        "at:O",
         timeUnit="utcyearmonthdate",
         title=None,
-        scale=alt.Scale(type="utc"),
-        axis=alt.Axis(format="%-d %b", grid=False, labelOverlap=True, tickCount="day"),
+        axis=alt.Axis(format="%-d %b", grid=False, labelOverlap=True, labelAngle=0),
     )
     span = HIGHEST_PCT - lowest_pct
     y = _saturation(
         "SpO2 on waking, %",
         [HIGHEST_PCT - span / SATURATION_SHARE, HIGHEST_PCT + 0.5],
-        list(range(lowest_pct + 1, HIGHEST_PCT + 1)),
+        list(range(HIGHEST_PCT, lowest_pct, -5)),
         "end",
     )
     scale = alt.Scale(domain=[lowest, highest / GROUND_SHARE], nice=False)
@@ -194,7 +194,7 @@ def _days(lowest_pct: int, lowest: float, highest: float, unit: str, mode: Mode)
         .encode(x=x, y=alt.Y("elevation:Q", title=None, scale=scale, axis=axis)),
         named("travel")
         .mark_point(shape="triangle-right", size=80, filled=True, opacity=1, color=colour("text", mode))
-        .encode(x=x, y=alt.value(STRIP_HEIGHT - 10), tooltip=[alt.Tooltip("words:N", title="travel")]),
+        .encode(x=x, y=alt.value(alt.expr("height - 9")), tooltip=[alt.Tooltip("words:N", title="travel")]),
     )
     chart = alt.layer(land, saturation).resolve_scale(y="independent")
     return as_text(dressed(chart.properties(height=STRIP_HEIGHT, width="container"), mode))

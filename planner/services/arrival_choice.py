@@ -8,10 +8,12 @@ from typing import Final
 
 from planner.errors import InputError, StoreError
 from planner.season.arrival import Option, limit_failures
+from planner.season.evaluate import COUNTED_BEFORE, ascent_warnings
 from planner.season.itinerary import Itinerary, broken, differences, problems
 from planner.season.model import Driver, Round
+from planner.season.nights import ascent_to, nights_of
 from planner.services.arrival import Arrival, fixed_of
-from planner.services.season import read_calendar
+from planner.services.season import Calendar, read_calendar
 from planner.store.history import in_force
 from planner.store.store import Store
 
@@ -103,8 +105,15 @@ def choices(store: Store, driver: Driver, given: Round) -> list[Choice]:
     return [choice for choice in reversed(ours) if choice.change_set_id in standing]
 
 
-def ascent_reason_kept(store: Store, driver: Driver, given: Round) -> str:
-    """Why the ascent rule was set aside for the chosen way to a round; empty when it was not."""
+def ascent_reason_kept(store: Store, calendar: Calendar, driver: Driver, given: Round) -> str:
+    """Why the ascent rule is set aside in the present plan for a round; empty while the plan keeps the rule.
+
+    Whoever hands a plan on shows this beside it.
+    """
+    race_at, places = calendar.race_of(given).starts_at, calendar.places
+    nights = nights_of(calendar.itinerary_of(driver), places, race_at - 3 * COUNTED_BEFORE, race_at)
+    if not ascent_warnings(ascent_to(nights, places[driver.home_place_id])):
+        return ""
     return next((choice.ascent_reason for choice in choices(store, driver, given)), "")
 
 

@@ -14,7 +14,7 @@ from planner.season.arrival import Option
 from planner.season.constraints import Limits
 from planner.season.model import Driver, Round
 from planner.services.arrival import Arrival, Order, arrival
-from planner.services.arrival_choice import Choice, choices
+from planner.services.arrival_choice import Choice, ascent_reason_kept, choices
 from planner.services.arrival_days import PlanDay, plan_days
 from planner.store.store import Store
 from planner.ui.arrival_words import day_words, way_words
@@ -45,11 +45,11 @@ def days_of(context: Context, asked: Asked, found: Arrival, option: Option) -> l
     return _days((*_key(context, asked), option.title), found, option)
 
 
-def choices_of(context: Context, driver: Driver, given: Round) -> list[Choice]:
-    """What was chosen for a driver and a round and is in force, the newest first."""
+def chosen_before(context: Context, found: Arrival) -> tuple[list[Choice], str]:
+    """What was chosen before and is in force, the newest first; and why the ascent rule is set aside."""
     store = context.store
-    key = (store.uid, str(store.path), store.version(), driver.id, given.id)
-    return _choices(key, store, driver, given)
+    key = (store.uid, str(store.path), store.version(), found.driver.id, found.round.id)
+    return _chosen_before(key, store, found)
 
 
 def trade_off_of(context: Context, asked: Asked, found: Arrival, chosen: Option) -> dict[str, Any]:
@@ -87,8 +87,9 @@ def _days(key: tuple[object, ...], _found: Arrival, _option: Option) -> list[Pla
 
 
 @st.cache_resource(show_spinner=False, max_entries=64)
-def _choices(key: tuple[object, ...], _store: Store, _driver: Driver, _given: Round) -> list[Choice]:
-    return choices(_store, _driver, _given)
+def _chosen_before(key: tuple[object, ...], _store: Store, _found: Arrival) -> tuple[list[Choice], str]:
+    driver, given = _found.driver, _found.round
+    return choices(_store, driver, given), ascent_reason_kept(_store, _found.calendar, driver, given)
 
 
 @st.cache_resource(show_spinner=False, max_entries=64)

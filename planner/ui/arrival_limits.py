@@ -55,7 +55,7 @@ def draw_limits(ctx: Context) -> tuple[Limits, Order, float | None]:
             min_value=LOWEST_BED[unit],
             step=None,
             format="%g",
-            placeholder="none known",
+            placeholder="none",
             help="Elevation of beds near the venue that lie lower than its own, for sleeping lower.",
             width=WIDTH,
             key=f"arrival_lower_{unit}",

@@ -19,7 +19,7 @@ from planner.services.arrival_choice import (
     refused,
     undo,
 )
-from planner.ui.arrival_cached import Asked, choices_of, days_chart_of, days_of, trade_off_of
+from planner.ui.arrival_cached import Asked, chosen_before, days_chart_of, days_of, trade_off_of
 from planner.ui.arrival_words import (
     WAY_HEAD,
     choice_words,
@@ -33,7 +33,6 @@ from planner.ui.errors import in_screen_words, plain_errors
 from planner.ui.page import Context, line, note_for_next_run
 from planner.ui.tables import note, table
 from planner.ui.text import escaped, literal
-from planner.wording import DASH
 
 _REFUSED = "why a way was not chosen"
 
@@ -46,16 +45,17 @@ def draw_ways(ctx: Context, asked: Asked, found: Arrival) -> Option:
     left, right = st.columns([3, 2], gap="medium")
     chart_key = f"arrival_chart_{name}"
     pressed = _pressed(chart_key)
+    way_key = f"arrival_way_{name}_{pressed}"
     with right:
         title = st.selectbox(
             "Look at one way: press its mark, or choose here",
             titles,
             index=titles.index(pressed) if pressed in titles else 0,
             format_func=lambda each: choice_words(titles.index(each) + 1, built[titles.index(each)]),
-            key=f"arrival_way_{name}_{pressed}",
+            key=way_key,
         )
         option = built[titles.index(title)]
-        _draw_option(ctx, found, option)
+        _draw_option(ctx, found, option, way_key)
     with left:
         st.vega_lite_chart(
             spec=trade_off_of(ctx, asked, found, option),
@@ -81,22 +81,22 @@ def _pressed(chart_key: str) -> str | None:
     return str(picked[0]["way"]) if picked else None
 
 
-def _draw_option(ctx: Context, found: Arrival, option: Option) -> None:
+def _draw_option(ctx: Context, found: Arrival, option: Option, way_key: str) -> None:
     """What one way gives and costs, what stands against it, and its choice."""
     st.html(
         f'<div class="p-why"><span class="p-do">{escaped(_capital(titled(found, option)))}.</span> '
         f"{escaped(option.difference)}</div>"
     )
     table(["", "gives and costs"], given_rows(option, ctx.units), right=(1,))
-    draw_choice(ctx, found, option)
+    draw_choice(ctx, found, option, way_key)
 
 
-def draw_choice(ctx: Context, found: Arrival, option: Option) -> None:
+def draw_choice(ctx: Context, found: Arrival, option: Option, way_key: str) -> None:
     """Choose the way, or say why not; undo what was chosen before."""
     said = st.session_state.pop(_REFUSED, None)
     if said:
         st.error(literal(said))
-    made = choices_of(ctx, found.driver, found.round)
+    made, set_aside = chosen_before(ctx, found)
     reason, climbs = "", ascent_failures(found, option)
     if is_planned(found, option):
         line("This is what is planned.")
@@ -116,15 +116,15 @@ def draw_choice(ctx: Context, found: Arrival, option: Option) -> None:
             type="primary",
             disabled=is_planned(found, option) or bool(refused(found, option, reason)),
             on_click=_choose,
-            args=(ctx, found, option, reason),
+            args=(ctx, found, option, reason, way_key),
             key="arrival_choose",
         )
         if made:
-            st.button("Undo", on_click=_undo, args=(ctx, made[0]), key="arrival_undo")
+            st.button("Undo", on_click=_undo, args=(ctx, found, made[0], way_key), key="arrival_undo")
     if made:
         note(f"Chosen by {made[0].by}: {made[0].title}. Undo puts back what was planned before.")
-        if made[0].ascent_reason:
-            line(f"The ascent rule was set aside by {made[0].by}: {made[0].ascent_reason}")
+    if set_aside:
+        line(f"The present plan sets the ascent rule aside. The reason given: {set_aside}")
     if found.in_hindsight:
         note(
             "This round has begun, so its days before are past: choosing says that they went that way. It "
@@ -132,23 +132,30 @@ def draw_choice(ctx: Context, found: Arrival, option: Option) -> None:
         )
 
 
-def _choose(ctx: Context, found: Arrival, option: Option, reason: str) -> None:
+def _choose(ctx: Context, found: Arrival, option: Option, reason: str, way_key: str) -> None:
     """Before the next run: a choice from the state of the season that was on the screen."""
     with plain_errors():
         try:
             choose(ctx.store, found, option, by=ctx.who, ascent_reason=reason)
             note_for_next_run(f"Kept: {found.driver.name} to {found.round.name}, {option.title}.")
+            _look_at_what_is_planned(found, way_key)
         except PlannerError as error:
             st.session_state[_REFUSED] = in_screen_words(error)
 
 
-def _undo(ctx: Context, choice: Choice) -> None:
+def _undo(ctx: Context, found: Arrival, choice: Choice, way_key: str) -> None:
     with plain_errors():
         try:
             undo(ctx.store, choice, by=ctx.who)
             note_for_next_run(f"Undone: {choice.title}. What was planned before is back.")
+            _look_at_what_is_planned(found, way_key)
         except PlannerError as error:
             st.session_state[_REFUSED] = in_screen_words(error)
+
+
+def _look_at_what_is_planned(found: Arrival, way_key: str) -> None:
+    usual = next(option.title for option in found.options if option.kind == "usual plan")
+    st.session_state[way_key] = usual
 
 
 def draw_days(ctx: Context, asked: Asked, found: Arrival, option: Option) -> None:
@@ -168,7 +175,7 @@ def draw_days(ctx: Context, asked: Asked, found: Arrival, option: Option) -> Non
     )
     table(
         ["day", "slept before it", "SpO2 on waking", "that day", "light"],
-        [[each or DASH for each in row] for row in day_rows(days, found.setting.places, ctx.units)],
+        day_rows(days, found.setting.places, ctx.units),
         right=(2,),
         stack=True,
     )
@@ -187,7 +194,7 @@ def draw_all(found: Arrival) -> None:
     table(
         WAY_HEAD,
         _rows(found, fit),
-        right=(3, 4, 5, 6, 7, 9),
+        right=(2, 3, 4, 5, 6, 7, 9),
         caption=f"Keep every limit, {found.order} first",
         stack=True,
     )

@@ -34,7 +34,7 @@ def headline(found: Arrival) -> str:
     best = found.options[0]
     who = f"{found.driver.name} to {found.round.name}"
     if not best.feasible:
-        return f"{who}: no way keeps every limit. Nearest: {titled(found, best)}."
+        return f"{who}: no way keeps every limit. Nearest to them: {titled(found, best)}."
     outlook, costs = best.outlook, best.costs
     if outlook is None or costs is None:
         return f"{who}: {titled(found, best)}."
@@ -54,6 +54,22 @@ def titled(found: Arrival, option: Option) -> str:
     if is_planned(found, option):
         return f"as planned now{arrives}"
     return f"a plain trip{arrives}, as nothing is planned yet"
+
+
+def planned_words(found: Arrival) -> str:
+    """What is planned now, when that is not the way in the first line."""
+    planned = next((option for option in found.options if is_planned(found, option)), None)
+    if planned is None:
+        return "Nothing is planned for this round yet."
+    if planned is found.options[0] or planned.outlook is None or planned.costs is None:
+        return ""
+    place, on = found.options.index(planned) + 1, found.arrives_on(planned)
+    arrives = "" if on is None else f"arriving {day(on)}, "
+    return (
+        f"Planned now: {arrives}{counted(planned.costs.nights_away, 'night')} away, "
+        f"{per_cent(planned.outlook.race_spo2_pct.mean)} on race morning; number {place} of "
+        f"{len(found.options)}."
+    )
 
 
 def round_words(found: Arrival) -> str:
