@@ -106,18 +106,34 @@ def checked(quantity: str, value: FloatLike, field: str | None = None) -> FloatA
     Raises: InputError naming the field, the first value out of range, the range and the unit.
     """
     known = QUANTITIES[quantity]
-    try:
-        array = np.asarray(value, dtype=np.float64)
-    except (TypeError, ValueError):
-        raise InputError(field or quantity, value, f"a number in {known.unit}") from None
+    array = numbers(field or quantity, value, known.unit)
     outside = (array < known.low) | (array > known.high)
     if outside.any():
         worst = float(array[outside].flat[0]) if array.ndim else float(array)
         unit = "" if known.unit == "1" else f" {known.unit}"  # a pure number has no unit to print
-        raise InputError(
-            field or quantity, worst, f"{known.low:g} to {known.high:g}{unit} ({known.meaning})"
-        )
+        expected = f"{known.low:g} to {known.high:g}{unit} ({known.meaning})"
+        raise InputError(field or quantity, worst, expected)
     return array
+
+
+def numbers(field: str, value: FloatLike, unit: str) -> FloatArray:
+    """Return the value as a float64 array of any size, or refuse what is no number.
+
+    A text that spells a number, or None, is refused too: it would have been read where it was typed.
+    Raises: InputError naming the field, the value and the unit.
+    """
+    try:
+        array = np.asarray(value)
+    except ValueError:  # rows of different lengths
+        array = np.asarray(None)
+    if array.dtype.kind not in "fiub":
+        raise InputError(field, value, f"a number{in_unit(unit)}")
+    return array.astype(np.float64, copy=False)
+
+
+def in_unit(unit: str) -> str:
+    """As " in hPa", to follow "a number"; nothing for a pure number."""
+    return "" if unit == "1" else f" in {unit}"
 
 
 def like(result: FloatArray, *given: FloatLike) -> FloatLike:

@@ -12,7 +12,7 @@ from functools import lru_cache
 from typing import TypeAlias
 from zoneinfo import ZoneInfo
 
-from planner.checks import QUANTITIES, checked
+from planner.checks import QUANTITIES, checked, in_unit
 from planner.errors import InputError
 
 Problem: TypeAlias = InputError | None
@@ -36,12 +36,12 @@ def number(field: str, value: object, quantity: str, *, optional: bool = False) 
         if known.low <= value <= known.high:
             return None
         if value != value:
-            return InputError(field, value, f"a finite number in {known.unit} ({known.meaning})")
+            return InputError(field, value, f"a finite number{in_unit(known.unit)} ({known.meaning})")
         try:
             checked(quantity, value, field)
         except InputError as problem:
             return problem
-    return InputError(field, value, f"a number in {known.unit} ({known.meaning})")
+    return InputError(field, value, f"a number{in_unit(known.unit)} ({known.meaning})")
 
 
 def whole(field: str, value: object, low: int, high: int, *, optional: bool = False) -> Problem:

@@ -65,6 +65,7 @@ def test_range_holds_the_middle_and_widens_with_elevation() -> None:
     middle = aerobic_capacity_pct(ELEVATIONS, 5.0)
     assert ((low <= middle) & (middle <= high) & (high <= 100.0)).all()
     assert (np.diff(high - low) >= 0.0).all()
+    assert aerobic_capacity_range_pct(8848.0)[0] >= 0.0
 
 
 def test_scalar_equals_array_element_and_nan_passes() -> None:

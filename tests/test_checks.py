@@ -62,10 +62,17 @@ def test_infinity_is_out_of_every_range(infinite: float) -> None:
         checked("days", infinite)
 
 
-@pytest.mark.parametrize("word", ["abc", "", [1.0, "x"], {"a": 1}])
+@pytest.mark.parametrize(
+    "word", ["abc", "", "1000", b"12", None, [1.0, None], [1.0, "x"], [[1.0], [1.0, 2.0]], {"a": 1}, 1 + 2j]
+)
 def test_what_is_no_number_is_refused_with_the_unit_wanted(word) -> None:
     with pytest.raises(InputError, match=r"elevation_m: .* expected a number in m$"):
         checked("elevation_m", word)
+
+
+def test_a_pure_number_has_no_unit_in_the_message() -> None:
+    with pytest.raises(InputError, match=r"^ph: 'sour' cannot be used, expected a number$"):
+        checked("ph", "sour")
 
 
 def test_like_gives_a_float_only_when_every_input_was_a_scalar() -> None:

@@ -70,7 +70,8 @@ def driver_called(store: Store, name: str) -> Driver:
 def test_made_again_the_files_are_the_same(tmp_path: Path) -> None:
     subprocess.run([sys.executable, "-m", "demo_data.make", str(tmp_path)], cwd=ROOT, check=True)
     made = sorted(path.name for path in tmp_path.iterdir())
-    assert made == sorted(path.name for path in demo_folder().glob("*.csv"))
+    kept = [path.name for path in demo_folder().iterdir() if path.suffix in (".csv", ".ics")]
+    assert made == sorted(kept)
     for name in made:
         assert (tmp_path / name).read_text("utf-8") == (demo_folder() / name).read_text("utf-8"), name
 

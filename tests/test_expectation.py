@@ -228,6 +228,12 @@ def test_wrong_words_are_refused() -> None:
         expected_spo2(straight_to(0.0), 0.0, wakefulness="drowsy")
     with pytest.raises(InputError, match="pressure_sd_hpa"):
         expected_spo2(straight_to(0.0), 0.0, pressure_sd_hpa=-1.0)
+    with pytest.raises(
+        InputError, match=r"pressure_sd_hpa: \(2,\) .* one number or the shape \(3,\) of at_h"
+    ):
+        expected_spo2(straight_to(0.0), np.arange(3.0), pressure_sd_hpa=np.array([1.0, 2.0]))
+    with pytest.raises(InputError, match="at_h: 'noon' cannot be used, expected a number in h"):
+        expected_spo2(straight_to(0.0), "noon")
 
 
 def test_state_at_home_is_steady() -> None:

@@ -15,7 +15,7 @@ from typing import Final
 
 import numpy as np
 
-from planner.checks import FloatArray, FloatLike, checked, like
+from planner.checks import FloatArray, FloatLike, checked, like, numbers
 from planner.constants import HOURS_PER_DAY
 from planner.errors import InputError
 from planner.physiology.population import POPULATION, Population
@@ -37,7 +37,7 @@ class ExposureHistory:
     inspired_po2_mmhg: FloatArray
 
     def __post_init__(self) -> None:
-        start = np.asarray(self.start_h, dtype=np.float64)
+        start = numbers("start_h", self.start_h, "h")
         inspired = checked("inspired_po2_mmhg", self.inspired_po2_mmhg)
         if start.ndim != 1 or start.size == 0 or start.shape != inspired.shape:
             raise InputError("start_h", start.shape, f"one start for each of {inspired.shape} tensions")
@@ -65,6 +65,8 @@ def ventilatory_state_at(history: ExposureHistory, at_h: FloatLike) -> FloatLike
         at_h: instants in the history's hours [h], scalar or array.
     Returns:
         State relative to sea level [1], the shape of at_h.
+    Raises:
+        InputError: instants that are no numbers.
     Valid:
         As the model's: 0 to 5000 m, healthy people.
     Source:
@@ -75,7 +77,7 @@ def ventilatory_state_at(history: ExposureHistory, at_h: FloatLike) -> FloatLike
         >>> ventilatory_state_at(home, 48.0) < 0.01
         True
     """
-    at = np.asarray(at_h, dtype=np.float64)
+    at = numbers("at_h", at_h, "h")
     targets = _target(history.inspired_po2_mmhg, POPULATION)
     state = _first_order_at(history, targets, at, POPULATION.rise_time_d, POPULATION.fall_time_d)
     return like(state, at_h)

@@ -11,7 +11,7 @@ from typing import Final
 
 import numpy as np
 
-from planner.checks import FloatArray, FloatLike, like
+from planner.checks import FloatArray, FloatLike, like, numbers
 from planner.constants import HOURS_PER_DAY
 from planner.errors import InputError
 from planner.physiology.acclimatisation import ExposureHistory, _first_order_at
@@ -47,13 +47,15 @@ def plasma_volume_change_pct(history: ExposureHistory, at_h: FloatLike) -> Float
         at_h: instants in the history's hours [h], scalar or array.
     Returns:
         Change [%], the shape of at_h.
+    Raises:
+        InputError: instants that are no numbers.
     Valid:
         0 to 4500 m; drinking more does not undo it.
     Source:
         Beidleman 2017 and 1997 (published) for the size after a day and for the return; time constant of the
         fall and its beginning at 1000 m: judgement.
     """
-    at = np.asarray(at_h, dtype=np.float64)
+    at = numbers("at_h", at_h, "h")
     elevation = _equivalent_m(history.inspired_po2_mmhg)
     ramp = np.clip((elevation - PLASMA_FROM_M) / (PLASMA_DAY_ONE_AT_M - PLASMA_FROM_M), 0.0, 1.0)
     day_one = PLASMA_DAY_ONE_PCT * ramp + PLASMA_PCT_PER_M * np.maximum(elevation - PLASMA_DAY_ONE_AT_M, 0.0)
@@ -69,13 +71,15 @@ def haemoglobin_mass_change_pct(history: ExposureHistory, at_h: FloatLike) -> Fl
         at_h: instants in the history's hours [h], scalar or array.
     Returns:
         Mean gain [%], the shape of at_h.
+    Raises:
+        InputError: instants that are no numbers.
     Valid:
         1500 to 4500 m, with iron in order. Studies disagree: below 3000 m some found no gain in four weeks
         (Rasmussen 2013, published).
     Source:
         +1.1 % per 100 h (Gore 2013, published) turned into a dose; time constant: judgement.
     """
-    at = np.asarray(at_h, dtype=np.float64)
+    at = numbers("at_h", at_h, "h")
     kilometres = _equivalent_m(history.inspired_po2_mmhg) / METRES_PER_KM
     lasting = HAEMOGLOBIN_PCT_PER_KM_H * HOURS_PER_DAY * HAEMOGLOBIN_TIME_D * kilometres
     return like(_first_order_at(history, lasting, at, HAEMOGLOBIN_TIME_D, HAEMOGLOBIN_TIME_D), at_h)

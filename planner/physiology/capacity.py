@@ -82,7 +82,7 @@ def aerobic_capacity_range_pct(elevation_m: FloatLike, days: FloatLike = 0.0) ->
     time = checked("days", days)
     middle = _aerobic_capacity_pct(elevation, time)
     half = DEVIATIONS_95 * LOSS_SD_SHARE * _loss_on_arrival_pct(elevation)
-    low, high = middle - half, np.minimum(middle + half, 100.0)
+    low, high = np.maximum(middle - half, 0.0), np.minimum(middle + half, 100.0)
     return like(low, elevation_m, days), like(high, elevation_m, days)
 
 

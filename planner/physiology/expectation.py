@@ -8,8 +8,9 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.checks import FloatArray, FloatLike, checked, like
+from planner.checks import FloatArray, FloatLike, checked, like, numbers
 from planner.constants import AIR_OXYGEN_FRACTION, HPA_PER_MMHG
+from planner.errors import InputError
 from planner.physiology.acclimatisation import ExposureHistory, ventilatory_state_at
 from planner.physiology.blood import po2_mmhg
 from planner.physiology.normal import _mixture_quantile
@@ -74,7 +75,8 @@ def expected_spo2(
     Returns:
         Expectation, its fields in the shape of at_h.
     Raises:
-        InputError: a wakefulness that is neither word, or a standard deviation below 0 or above 50 hPa.
+        InputError: a wakefulness that is neither word, a standard deviation below 0 or above 50 hPa or of
+            another shape, instants that are no numbers.
     Valid:
         Rest, 0 to 5000 m (72 to 165 mmHg inspired); beyond that beyond_validity is set. Healthy people; a
         reading inside the range never proves safety.
@@ -85,8 +87,11 @@ def expected_spo2(
         >>> round(expected_spo2(home, 24.0).mean_spo2_pct)
         97
     """
-    at = np.asarray(at_h, dtype=np.float64)
-    pressure_sd = np.broadcast_to(checked("pressure_sd_hpa", pressure_sd_hpa), at.shape).reshape(-1)
+    at = numbers("at_h", at_h, "h")
+    pressure_sd = checked("pressure_sd_hpa", pressure_sd_hpa)
+    if pressure_sd.shape not in ((), at.shape):
+        raise InputError("pressure_sd_hpa", pressure_sd.shape, f"one number or the shape {at.shape} of at_h")
+    pressure_sd = np.broadcast_to(pressure_sd, at.shape).reshape(-1)
     flat = at.reshape(-1)
     inspired = history.inspired_at(flat)
     state = np.asarray(ventilatory_state_at(history, flat))

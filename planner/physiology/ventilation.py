@@ -54,9 +54,8 @@ LARGEST_PACO2_FALL: Final = 0.8
 
 @dataclass(frozen=True)
 class ArterialGases:
-    """The chain at rest: ventilation relative to sea level [1], tensions [mmHg], pH [1], saturation [%]."""
+    """The chain at rest: tensions [mmHg], pH [1], saturation [%]."""
 
-    alveolar_ventilation: FloatLike
     paco2_mmhg: FloatLike
     ph: FloatLike
     alveolar_po2_mmhg: FloatLike
@@ -68,7 +67,6 @@ class ArterialGases:
 class _Chain:
     """The same inside, without the arterial tension, plus the slope of saturation by inspired oxygen."""
 
-    ventilation: FloatArray
     paco2: FloatArray
     ph: FloatArray
     alveolar: FloatArray
@@ -152,7 +150,6 @@ def arterial_gases(
     given = (inspired_po2_mmhg, ventilatory_state, breathing)
     arterial = po2_mmhg(chain.saturation, chain.ph)
     return ArterialGases(
-        alveolar_ventilation=like(1.0 + chain.ventilation, *given),
         paco2_mmhg=like(chain.paco2, *given),
         ph=like(chain.ph, *given),
         alveolar_po2_mmhg=like(chain.alveolar, *given),
@@ -238,4 +235,4 @@ def _chain(
     saturation = np.maximum(_standard_saturation_pct(standard) - population.venous_admixture_pct, 0.0)
     # The Bohr shift hardly changes with the tension: its derivative is left out of the slope.
     slope = _standard_slope_pct_per_mmhg(standard) * standard / alveolar
-    return _Chain(ventilation, paco2, ph, alveolar, saturation, slope)
+    return _Chain(paco2, ph, alveolar, saturation, slope)
