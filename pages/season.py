@@ -17,9 +17,11 @@ from planner.services.season import (
     whereabouts,
 )
 from planner.ui.cached import calendar_of
+from planner.ui.calendar_files import draw_calendar_files
 from planner.ui.driver_cached import costs_of
 from planner.ui.frames import frame
 from planner.ui.page import Context, answer, end_page, line, start_page
+from planner.ui.season_search import draw_season_search
 from planner.ui.tables import note, table
 from planner.units import from_house
 from planner.wording import (
@@ -63,7 +65,9 @@ def show_season(ctx: Context, calendar: Calendar) -> None:
     show_landscape(ctx, calendar, driver)
     if driver is not None:
         show_high_rounds(ctx, driver)
+        draw_season_search(ctx, calendar, driver)
     show_whereabouts(ctx, calendar)
+    draw_calendar_files(ctx, driver)
 
 
 def headline(ctx: Context, calendar: Calendar) -> str:

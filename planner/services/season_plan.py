@@ -104,6 +104,28 @@ class SeasonPlans:
         """The rounds that count, in time order."""
         return [outlook.point for outlook in self.present.rounds]
 
+    def cost_of(self, outlook: PlanOutlook) -> float:
+        """What a plan costs at the coach's rates, in nights away."""
+        spent, rates = outlook.costs, self.question.rates
+        return (
+            spent.nights_away
+            + rates.tent_night * spent.tent_nights
+            + rates.flight * spent.flights
+            + rates.travel_hour * spent.travel_h
+        )
+
+    def benefit_of(self, outlook: PlanOutlook) -> float:
+        """The benefit of a plan looked at hour by hour, as `mean_benefit` tells it [%]."""
+        of_spo2 = self.question.measure == "SpO2"
+        values = [(r.race_spo2_pct if of_spo2 else r.race_capacity_pct).mean for r in outlook.rounds]
+        weights = [each.weight for each in self.model.problem.rounds]
+        counted = [v for v, w in zip(values, weights, strict=True) if w > 0.0]
+        if not counted:
+            return 0.0
+        if self.question.combination == "worst":
+            return min(counted)
+        return sum(v * w for v, w in zip(values, weights, strict=True)) / sum(weights)
+
     def mean_benefit(self) -> list[float]:
         """The benefit of each plan as a figure that can be read: the weighted mean, or the worst [%]."""
         if self.question.combination == "worst":
