@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from datetime import timedelta
 from typing import Literal, TypeAlias
 
 import streamlit as st
 
 from planner.charts.strip import floor_pct
+from planner.services import workspace
 from planner.services.morning import DriverRow, ThisMorning
 from planner.services.notices import keep_notice
 from planner.ui.cached import morning_of
@@ -21,6 +23,8 @@ from planner.wording import clock, day, elevation, pressure, zone_name
 Kind: TypeAlias = Literal["told the physician", "note"]
 
 ASKING = "this morning asks about"
+LOOKS_EVERY = timedelta(seconds=20)
+CLOCK_STANDS = timedelta(minutes=5)  # how old the words about time may become
 KEPT = "notices kept on this morning"  # numbers the fields, so that the next ones begin empty
 
 
@@ -31,7 +35,8 @@ def place_line(screen: ThisMorning, ctx: Context) -> str:
         return "Begin on Team: places first, then drivers."
     when = f"{day(screen.at, place.zone)}, {clock(screen.at, place.zone)} {zone_name(place.zone, screen.at)}"
     if screen.is_spread:
-        return f"The team is spread: each row names its own place and time. In {place.name} it is {when}."
+        utc = f"{day(screen.at)}, {clock(screen.at, 'UTC')} UTC"
+        return f"The team is spread, and each row names its own place and time: {utc}."
     beds = (
         ""
         if place.bed_elevation_m == place.track_elevation_m
@@ -88,15 +93,25 @@ def ask(ctx: Context, row: DriverRow, kind: Kind) -> None:
             st.rerun()
 
 
+@st.fragment(run_every=LOOKS_EVERY)
+def keep_up(ctx: Context, drawn_version: int) -> None:
+    """A page that is left open follows what others type, and its clock."""
+    is_old = workspace.now(ctx.store) - ctx.now > CLOCK_STANDS
+    if is_old or ctx.store.version() != drawn_version:
+        st.rerun()
+
+
 def main() -> None:
     """Draw the page."""
     ctx = start_page("This morning")
+    drawn_version = ctx.store.version()
     screen = morning_of(ctx)
     answer(screen.sentence)
     line(place_line(screen, ctx))
     low_pct = floor_pct([morning for row in screen.rows for morning in row.mornings])
     for row in screen.rows:
         draw_row(row, screen, low_pct, ctx)
+    keep_up(ctx, drawn_version)
     end_page(ctx)
 
 

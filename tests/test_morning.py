@@ -20,6 +20,7 @@ from planner.services.own import Past
 from planner.services.season import read_calendar
 from planner.services.workspace import FROZEN_CLOCK
 from planner.store.store import Store
+from planner.wording import NO_BREAK
 
 HOUR = timedelta(hours=1)
 ZONE = "America/Bogota"  # UTC-5 all year
@@ -164,6 +165,27 @@ def test_the_place_is_where_most_are(team: Team) -> None:
 
 def test_after_the_last_stay_a_driver_is_where_it_ended(team: Team) -> None:
     assert team.row(team.ada, AT + timedelta(days=9)).where.place.name == "Cerro Quieto"
+
+
+def test_a_team_that_is_spread_is_called_so_and_a_place_that_is_guessed_too(team: Team) -> None:
+    assert not team.look().is_spread
+    later = AT + timedelta(days=30)
+    for driver, name in ((team.ada, "Norre"), (team.bo, "Sund")):
+        place = team.store.add(Place(name, "Europe/Oslo", 20.0, 20.0, 59.0, 10.0), by="coach")
+        stay = Stay(driver.id, place.id, later - HOUR, later + timedelta(days=2))
+        team.store.add(stay, by="coach")
+    assert team.look(later).is_spread
+    assert team.row(team.ada, later).where.is_planned
+    assert not team.row(team.cy, later).where.is_planned
+
+
+def test_the_last_reading_is_told_in_the_time_and_with_the_name_of_its_place(team: Team) -> None:
+    team.read(team.ada, 93.0, AT)
+    place = team.store.add(Place("Norre", "Europe/Oslo", 20.0, 20.0, 59.0, 10.0), by="coach")
+    later = AT + timedelta(days=5)
+    team.store.add(Stay(team.ada.id, place.id, later - HOUR, later + timedelta(days=9)), by="coach")
+    (reason,) = team.row(team.ada, later + HOUR).reasons
+    assert reason.endswith("Last 93 % on Wed 14 May, 07:40 in Cerro Quieto.".replace(" %", f"{NO_BREAK}%"))
 
 
 def test_a_day_before_is_judged_to_its_end_and_a_day_ahead_refused(team: Team) -> None:

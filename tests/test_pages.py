@@ -12,7 +12,13 @@ from streamlit.testing.v1 import AppTest
 
 from planner.physiology.illness import EMERGENCY_SIGNS
 from planner.season.model import Driver
-from planner.services.workspace import choose_units, mark_begun_empty, remember_name, units_of
+from planner.services.workspace import (
+    FROZEN_CLOCK,
+    choose_units,
+    mark_begun_empty,
+    remember_name,
+    units_of,
+)
 from planner.store.store import Store
 from planner.ui.cautions import WHO_DECIDES
 from planner.ui.navigation import PAGES as MENU
@@ -101,6 +107,15 @@ def test_stored_text_is_shown_as_typed(demo_store: Store, monkeypatch: pytest.Mo
     driver_pills = opened("readings", demo_store, monkeypatch).button_group[1]
     assert any(option.startswith(r"\<img src") for option in driver_pills.options)
     assert not any(option.startswith("<") for option in driver_pills.options)
+
+
+def test_a_spread_team_is_told_with_places_and_times(
+    demo_store: Store, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    demo_store.set_setting(FROZEN_CLOCK, "2026-06-11T12:00:00+00:00")  # the demo's drivers are at their homes
+    text = said(opened("this_morning", demo_store, monkeypatch))
+    assert "The team is spread" in text
+    assert "at Okunagi, 40 m, 21:00 JST" in text  # computed: 12:00 UTC at UTC+9
 
 
 def test_a_fault_is_one_plain_line(demo_store: Store, monkeypatch: pytest.MonkeyPatch) -> None:

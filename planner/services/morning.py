@@ -183,7 +183,7 @@ def _row(
     standing = _standing(all_judged, datetime.combine(today, time(), zone), at)
     if standing is None:
         outcome: RowOutcome = "not measured"
-        reasons, advice, reading = _not_measured(expected, last, where, at), "", None
+        reasons, advice, reading = _not_measured(expected, last, where, course.calendar), "", None
     else:
         sample, judgement = standing
         outcome, reasons, advice = judgement.outcome, judgement.reasons, judgement.advice
@@ -252,14 +252,16 @@ def _standing(
 
 
 def _not_measured(
-    expected: ExpectedRange, last: Reading | None, where: Whereabout, at: datetime
+    expected: ExpectedRange, last: Reading | None, where: Whereabout, calendar: Calendar
 ) -> tuple[str, ...]:
     limits = per_cent_range(expected.low_pct, expected.high_pct)
     words = f" {expected.words}" if expected.words else ""
     text = f"No reading yet today, expected {limits}{words}."
     if last is None:
         return (f"{text} None in the last {MORNINGS_SHOWN} days.",)
-    return (f"{text} Last {per_cent(last.spo2_pct)} on {day_and_clock(last.taken_at, where.place.zone)}.",)
+    place = calendar.places[last.place_id]
+    there = "" if place.id == where.place.id else f" in {place.name}"
+    return (f"{text} Last {per_cent(last.spo2_pct)} on {day_and_clock(last.taken_at, place.zone)}{there}.",)
 
 
 def _range_words(course: DriverCourse) -> str:

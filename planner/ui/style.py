@@ -13,8 +13,8 @@ _PAGE: Final = """
 .stApp{font-variant-numeric:tabular-nums lining-nums}
 .stApp [data-testid="stHtml"]{overflow-wrap:break-word;overflow-x:auto}
 .p-row,.p-answer,.p-line,.p-kept{overflow-wrap:anywhere}
-button[data-testid^="stBaseButton-primary"],
-button[data-testid^="stBaseButton-primary"] *{color:var(--on-accent)}
+button[data-testid^="stBaseButton-primary"]:enabled,
+button[data-testid^="stBaseButton-primary"]:enabled *{color:var(--on-accent)}
 button[data-testid="stBaseButton-tertiary"],
 [data-testid="stPopover"] button[kind="tertiary"]{color:var(--accent)}
 [class*="st-key-p-card-"]{padding:.6rem .9rem .5rem;background:var(--surface);margin-bottom:-.4rem}

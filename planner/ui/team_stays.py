@@ -19,7 +19,7 @@ from planner.ui.tables import note, table
 from planner.ui.text import escaped, literal
 from planner.wording import counted, day_and_clock, elevation, zone_name
 
-LOOKS_AHEAD: Final = timedelta(days=45)
+LOOKS_AHEAD: Final = timedelta(days=30)
 ARRIVES: Final = time(18)
 LEAVES: Final = time(9)
 
@@ -54,21 +54,25 @@ def draw_stays(ctx: Context) -> None:
 
 def _table(ctx: Context, calendar: Calendar, planned: list[Stay]) -> None:
     names = {driver.id: driver.name for driver in calendar.drivers}
-    rows = []
+    together: dict[tuple[int, datetime, datetime, float | None], list[str]] = {}
     for stay in planned:
-        place = calendar.places[stay.place_id]
-        bed_m = place.bed_elevation_m if stay.bed_elevation_m is None else stay.bed_elevation_m
+        key = (stay.place_id, stay.arrive_at, stay.depart_at, stay.bed_elevation_m)
+        together.setdefault(key, []).append(names[stay.driver_id])
+    rows = []
+    for (place_id, arrive_at, depart_at, typed_bed_m), who in together.items():
+        place = calendar.places[place_id]
+        bed_m = place.bed_elevation_m if typed_bed_m is None else typed_bed_m
         rows.append(
             [
-                names[stay.driver_id],
                 place.name,
-                f"{day_and_clock(stay.arrive_at, place.zone)} {zone_name(place.zone, stay.arrive_at)}",
-                day_and_clock(stay.depart_at, place.zone),
+                ", ".join(who),
+                f"{day_and_clock(arrive_at, place.zone)} {zone_name(place.zone, arrive_at)}",
+                day_and_clock(depart_at, place.zone),
                 elevation(bed_m, ctx.units),
             ]
         )
     table(
-        ["driver", "place", "arrives", "leaves", "sleeps at"],
+        ["place", "drivers", "arrive", "leave", "sleep at"],
         rows,
         right=(4,),
         caption=f"Away from home, now and in the next {LOOKS_AHEAD.days} days",
