@@ -57,14 +57,16 @@ def arrival_options(
     limits: Limits,
     *,
     lower_bed_m: float | None = None,
+    not_before: datetime | None = None,
 ) -> list[Option]:
     """Every sensible way to the round, the best first under the coach's limits.
 
     Feasible ones come first, then fewest nights away, flights, hours of travel, then most saturation on race
-    morning. `lower_bed_m` is the elevation of beds near the venue that lie lower than the track, if known.
+    morning. `lower_bed_m` is the elevation of beds near the venue that lie lower than the track, if known;
+    what lies before `not_before` is past and stays as it is.
     Raises: InputError when the driver's itinerary leaves no gap before the round.
     """
-    gap = gap_before(itinerary, point, fixed, setting)
+    gap = gap_before(itinerary, point, fixed, setting, not_before)
     ways = [Sketch("usual plan", "the usual plan", itinerary=gap.base)]
     ways += [
         _built(sketch, gap, point, fixed, setting) for sketch in sketches(gap, point, setting, lower_bed_m)

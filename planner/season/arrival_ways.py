@@ -11,7 +11,16 @@ from zoneinfo import ZoneInfo
 from planner.errors import InputError
 from planner.season.constraints import bed_refused, local_date
 from planner.season.evaluate import RoundPoint, Setting
-from planner.season.itinerary import Fixed, Itinerary, Visit, insert_trip
+from planner.season.itinerary import (
+    Fixed,
+    Itinerary,
+    Visit,
+    begins_in,
+    ends_at,
+    ends_in,
+    insert_trip,
+    starts_at,
+)
 from planner.season.model import Place, Stay
 from planner.season.nights import ONE_DAY, sleeping_elevation_m
 from planner.season.travel import great_circle_km
@@ -71,9 +80,16 @@ class Sketch:
     why: str = ""
 
 
-def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], setting: Setting) -> Gap:
+def gap_before(
+    itinerary: Itinerary,
+    point: RoundPoint,
+    fixed: Sequence[Fixed],
+    setting: Setting,
+    not_before: datetime | None = None,
+) -> Gap:
     """The free time before a round, with an itinerary that reaches the round.
 
+    What lies before `not_before` is past and stays as it is.
     Raises: InputError when the driver is travelling, or bound, until the round begins.
     """
     base = _reaching(itinerary, point, fixed, setting)
@@ -81,14 +97,8 @@ def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], 
     bound = max(before, key=lambda f: f.ends_at, default=None)
     earliest = point.first_session_at - LONGEST_GAP
     if bound is None or bound.ends_at < earliest:
-        free_from, since = (
-            max(base.entries[0].arrive_at, earliest) if base.entries else earliest,
-            "the weeks before",
-        )
-        start = base.index_at(free_from)
-        while start is not None and not isinstance(base.entries[start], Stay):
-            free_from = base.entries[start].arrive_at
-            start = base.index_at(free_from)
+        since = "the weeks before"
+        free_from, start = _at_a_place(base, max(starts_at(base.entries[0]), earliest))
     else:
         since = bound.name
         venue = setting.places[bound.place_id]
@@ -97,6 +107,8 @@ def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], 
         start = base.index_at(bound.ends_at - timedelta(minutes=1))
         if start is not None and base.entries[start].depart_at <= free_from:
             free_from = max(bound.ends_at, base.entries[start].depart_at)
+    if not_before is not None and not_before > free_from:
+        free_from, start = _at_a_place(base, not_before)
     entry = base.entries[start] if start is not None else None
     if not isinstance(entry, Stay) or free_from >= point.first_session_at:
         raise InputError("round", point.name, f"a round with free time before it; {since} leaves none")
@@ -105,13 +117,8 @@ def gap_before(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], 
 
 def _reaching(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], setting: Setting) -> Itinerary:
     """The itinerary, with a plain trip to the round put in when it does not go there yet."""
-    base = itinerary
-    ends_at = max((f.ends_at for f in fixed if f.round_id == point.round_id), default=point.race_at)
-    if not base.entries:
-        home = Stay(
-            itinerary.driver_id, setting.home.id, point.first_session_at - LONGEST_GAP, ends_at + LONGEST_GAP
-        )
-        base = Itinerary(itinerary.driver_id, (home,))
+    ends = max((f.ends_at for f in fixed if f.round_id == point.round_id), default=point.race_at)
+    base = _covering(itinerary, point.first_session_at - LONGEST_GAP, ends + LONGEST_GAP, ends, setting)
     i = base.index_at(point.first_session_at)
     entry = base.entries[i] if i is not None else None
     if isinstance(entry, Stay) and entry.place_id == point.place_id:
@@ -120,8 +127,42 @@ def _reaching(itinerary: Itinerary, point: RoundPoint, fixed: Sequence[Fixed], s
     day = local_date(point.first_session_at, venue) - ONE_DAY
     arrive = datetime.combine(day, time(18), ZoneInfo(venue.zone)).astimezone(ZoneInfo("UTC"))
     return insert_trip(
-        base, venue.id, arrive, _next_at(ends_at, EARLIEST_DEPARTURE, venue), setting.times, fixed
+        base, venue.id, arrive, _next_at(ends, EARLIEST_DEPARTURE, venue), setting.times, fixed
     )
+
+
+def _covering(
+    itinerary: Itinerary, from_at: datetime, until: datetime, round_ends_at: datetime, setting: Setting
+) -> Itinerary:
+    """The itinerary, with time at home before or after it when the round lies outside of it."""
+    driver_id, home = itinerary.driver_id, setting.home
+    if not itinerary.entries:
+        return Itinerary(driver_id, (Stay(driver_id, home.id, from_at, until),))
+    entries = list(itinerary.entries)
+    first, last = entries[0], entries[-1]
+    if ends_at(last) <= round_ends_at:
+        leaves = ends_at(last)
+        if ends_in(last) != home.id:
+            way = timedelta(hours=setting.times.between(ends_in(last), home.id).hours)
+            entries.append(setting.times.leg(driver_id, ends_in(last), home.id, arrive_at=leaves + way))
+            leaves += way
+        entries.append(Stay(driver_id, home.id, leaves, max(until, leaves + ONE_DAY)))
+    if starts_at(first) >= from_at + LONGEST_GAP:
+        arrives = starts_at(first)
+        if begins_in(first) != home.id:
+            entries.insert(0, setting.times.leg(driver_id, home.id, begins_in(first), arrive_at=arrives))
+            arrives = starts_at(entries[0])
+        entries.insert(0, Stay(driver_id, home.id, min(from_at, arrives - ONE_DAY), arrives))
+    return Itinerary(driver_id, tuple(entries))
+
+
+def _at_a_place(itinerary: Itinerary, at: datetime) -> tuple[datetime, int | None]:
+    """The first instant from then on at which the driver is not travelling, and the entry that holds it."""
+    i = itinerary.index_at(at)
+    while i is not None and not isinstance(itinerary.entries[i], Stay):
+        at = ends_at(itinerary.entries[i])
+        i = itinerary.index_at(at)
+    return at, i
 
 
 def sketches(gap: Gap, point: RoundPoint, setting: Setting, lower_bed_m: float | None) -> Iterator[Sketch]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import asdict, dataclass, replace
 from datetime import date, datetime
 from typing import Final, Literal, TypeAlias
@@ -11,8 +12,8 @@ from planner.season.arrival import Option, arrival_options
 from planner.season.arrival_ways import Gap, Kind, gap_before
 from planner.season.constraints import Limits, local_date
 from planner.season.evaluate import RoundPoint, Setting, round_point
-from planner.season.itinerary import Fixed, Itinerary, ends_at, fixed_points, starts_at
-from planner.season.model import Driver, Leg, Place, Round, Stay
+from planner.season.itinerary import Fixed, Itinerary, fixed_points
+from planner.season.model import Driver, Place, Round
 from planner.season.travel import LegTimes
 from planner.services.driver import driver_view
 from planner.services.limits import keep_limits, kept_limits, season_limits
@@ -96,11 +97,16 @@ def arrival(
     itinerary = calendar.itinerary_of(driver)
     asked = season_limits(store) if limits is None else limits
     by = kept_order(store) if order is None else order
-    options = arrival_options(itinerary, point, fixed, setting, asked, lower_bed_m=lower_bed_m)
+    # A round that has begun is planned in hindsight: then all before it may be corrected.
+    not_before = at if point.first_session_at > at else None
+    gap = gap_before(itinerary, point, fixed, setting, not_before)
+    options = arrival_options(
+        itinerary, point, fixed, setting, asked, lower_bed_m=lower_bed_m, not_before=not_before
+    )
     if not calendar.is_high(given):
         options = [o for o in options if o.itinerary is not None or o.kind not in HIGH_GROUND_KINDS]
-    if point.first_session_at > at:
-        options = [_not_in_the_past(each, itinerary, at, setting.home.zone) for each in options]
+    if not_before is not None:
+        options = [_not_in_the_past(each, not_before, calendar.places) for each in options]
     return Arrival(
         calendar=calendar,
         driver=driver,
@@ -109,7 +115,7 @@ def arrival(
         point=point,
         fixed=fixed,
         setting=setting,
-        gap=gap_before(itinerary, point, fixed, setting),
+        gap=gap,
         limits=asked,
         order=by,
         now=at,
@@ -156,25 +162,6 @@ def find_round(calendar: Calendar, asked: str, at: datetime) -> Round:
     raise NotFoundError(f"there is no round {asked!r}; rounds: {', '.join(r.name for r in calendar.rounds)}")
 
 
-def first_change_at(old: Itinerary, new: Itinerary) -> datetime | None:
-    """The first instant at which the second itinerary leaves the first; None when they are one."""
-    for before, after in zip(old.entries, new.entries, strict=False):
-        if _without_end(before) != _without_end(after):
-            return min(starts_at(before), starts_at(after))
-        if ends_at(before) != ends_at(after):
-            return min(ends_at(before), ends_at(after))
-    longer = max(old.entries, new.entries, key=len)
-    shorter = min(len(old.entries), len(new.entries))
-    return starts_at(longer[shorter]) if len(longer) > shorter else None
-
-
-def _without_end(entry: Stay | Leg) -> Stay | Leg:
-    """An entry as it stands at its beginning."""
-    if isinstance(entry, Stay):
-        return replace(entry, depart_at=entry.arrive_at, id=0)
-    return replace(entry, arrive_at=entry.depart_at, id=0)
-
-
 def _point(calendar: Calendar, given: Round) -> RoundPoint:
     place = calendar.place_of(given)
     return round_point(
@@ -188,15 +175,14 @@ def fixed_of(calendar: Calendar, driver: Driver) -> list[Fixed]:
     return fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id)
 
 
-def _not_in_the_past(option: Option, planned: Itinerary, at: datetime, zone: str) -> Option:
-    """The option, refused when it would have had to begin before now."""
-    if option.itinerary is None:
+def _not_in_the_past(option: Option, at: datetime, places: Mapping[int, Place]) -> Option:
+    """The option, refused when a journey that it adds would have had to begin before now."""
+    legs = () if option.itinerary is None else option.itinerary.legs
+    gone = [leg for leg in legs if leg.id == 0 and leg.depart_at < at]
+    if not gone:
         return option
-    parts_at = first_change_at(planned, option.itinerary) if planned.entries else None
-    if parts_at is None or parts_at >= at:
-        return option
-    words = f"It leaves the present plan on {day_and_clock(parts_at, zone)}, which is past."
-    return replace(option, why=(*option.why, words))
+    left = day_and_clock(gone[0].depart_at, places[gone[0].from_place_id].zone)
+    return replace(option, why=(*option.why, f"It leaves on {left}, which is past."))
 
 
 def _rank(option: Option, order: Order) -> tuple[int, float]:

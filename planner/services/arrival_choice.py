@@ -141,7 +141,7 @@ def _refuse_if_stale(store: Store, found: Arrival) -> None:
 def _refuse_unless_whole(found: Arrival, chosen: Itinerary) -> None:
     """The last look before writing: the itinerary has no hole, and misses nothing that it kept before."""
     places = found.setting.places
-    already = broken(found.planned, found.fixed, places)
+    already = broken(found.gap.base, found.fixed, places)
     missed = [sentence for sentence in broken(chosen, found.fixed, places) if sentence not in already]
     wrong = [*problems(chosen, places), *missed]
     if wrong:

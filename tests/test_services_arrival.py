@@ -1,0 +1,519 @@
+"""Ways to a round on the demo: what is shown, what a choice changes, what is refused, what is put back."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterable
+from dataclasses import replace
+from datetime import UTC, datetime, timedelta
+
+import pytest
+
+from planner.errors import InputError, NotFoundError, StoreError
+from planner.monitoring.model import Reading
+from planner.season.arrival import Option
+from planner.season.constraints import Limits
+from planner.season.itinerary import Itinerary, broken, ends_at, problems, starts_at
+from planner.season.model import Commitment, Driver, Leg, Place, Round, Stay
+from planner.services.arrival import (
+    ORDERS,
+    Arrival,
+    arrival,
+    find_round,
+    keep_asked,
+    next_high_round,
+)
+from planner.services.arrival_choice import (
+    ascent_failures,
+    ascent_reason_kept,
+    choices,
+    choose,
+    is_planned,
+    refused,
+    undo,
+)
+from planner.services.arrival_days import plan_days
+from planner.services.driver import driver_view
+from planner.services.limits import season_limits
+from planner.services.morning import DriverRow, morning
+from planner.services.season import RoundCost, read_calendar, round_costs
+from planner.services.workspace import FROZEN_CLOCK, now
+from planner.store.store import Store
+
+NO_LIMITS = Limits(None, None, "high", None, 0.0, 100.0)
+
+
+def driver_called(store: Store, name: str) -> Driver:
+    return next(d for d in store.all(Driver) if d.name.startswith(name))
+
+
+def looked_at(store: Store, name: str, asked: str, limits: Limits | None = None) -> Arrival:
+    calendar = read_calendar(store)
+    given = find_round(calendar, asked, now(store))
+    return arrival(store, driver_called(store, name), given, limits=limits)
+
+
+def another(found: Arrival) -> Option:
+    """The best way that can be chosen and arrives on another day than planned."""
+    [planned] = [o for o in found.options if is_planned(found, o)]
+    return next(o for o in found.options if o.feasible and found.arrives_on(o) != found.arrives_on(planned))
+
+
+def everything(store: Store) -> tuple[list[Stay], list[Leg]]:
+    return store.all(Stay), store.all(Leg)
+
+
+def row_of(store: Store, name: str) -> DriverRow:
+    return next(row for row in morning(store) if row.driver.startswith(name))
+
+
+def cost_of(store: Store, found: Arrival) -> RoundCost:
+    calendar = read_calendar(store)
+    person = driver_view(store, calendar, found.driver, now(store)).person
+    costs = round_costs(calendar, found.driver, now(store), person)
+    return next(cost for cost in costs if cost.round.id == found.round.id)
+
+
+# What is shown ------------------------------------------------------------------------------------------
+
+
+def test_the_round_at_2250_m_has_at_least_five_kinds_of_way(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Bastien", "Talquime")
+    assert found.venue.track_elevation_m == 2250.0
+    assert {o.kind for o in found.options if o.itinerary is not None} == {
+        "usual plan", "straight there", "home first", "half-way stop", "the morning itself",
+    }  # fmt: skip
+    assert found.gap.since == "Portmerrin Round"
+    assert found.calendar.places[found.gap.place.id].track_elevation_m < 100.0
+    for option in found.options:
+        assert option.feasible == (not option.why)
+        assert option.difference.endswith(".")
+        if option.itinerary is not None:
+            assert option.outlook is not None
+            assert option.costs is not None
+    # A tent needs the physician's note; lower beds need somebody who knows of some.
+    against = {o.kind: " ".join(o.why) for o in found.options if o.itinerary is None}
+    assert "no physician's note" in against["tent at home"]
+    assert "No beds lower than 2250 m are known" in against["sleep lower"]
+    noted = looked_at(demo_store, "Tomé", "Talquime")
+    assert any(o.feasible and o.costs and o.costs.tent_nights for o in noted.options)
+
+
+def test_lower_beds_that_are_typed_make_another_way(demo_store: Store) -> None:
+    driver, calendar = driver_called(demo_store, "Bastien"), read_calendar(demo_store)
+    given = find_round(calendar, "Talquime", now(demo_store))
+    found = arrival(demo_store, driver, given, lower_bed_m=1500.0)
+    lower = next(o for o in found.options if o.kind == "sleep lower")
+    assert lower.itinerary is not None
+    assert [s.bed_elevation_m for s in lower.itinerary.stays if s.place_id == given.place_id] == [1500.0]
+
+
+def test_every_way_of_every_driver_is_whole(demo_store: Store) -> None:
+    """No hole, no overlap, no appointment newly missed, and none that fails for want of a standing start."""
+    calendar = read_calendar(demo_store)
+    built: Counter[str] = Counter()
+    for driver in calendar.drivers:
+        for given in calendar.rounds:
+            if not calendar.is_high(given):
+                continue
+            found = arrival(demo_store, driver, given)
+            missed = set(broken(found.planned, found.fixed, calendar.places))
+            for option in found.options:
+                assert "not travelling" not in " ".join(option.why)
+                if option.itinerary is None:
+                    continue
+                built[option.kind] += 1
+                assert problems(option.itinerary, calendar.places) == []
+                assert set(broken(option.itinerary, found.fixed, calendar.places)) <= missed
+    assert built["tent at home"] > 5
+    assert built["half-way stop"] > 20
+
+
+def test_a_low_round_is_not_told_what_it_lacks(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Bastien", "Hartsmere")
+    assert found.options
+    assert all(o.itinerary is not None or o.kind == "home first" for o in found.options)
+
+
+def test_ranked_by_the_order_that_is_asked(demo_store: Store) -> None:
+    driver, calendar = driver_called(demo_store, "Ilse"), read_calendar(demo_store)
+    given = find_round(calendar, "14", now(demo_store))
+    for order in ORDERS:
+        found = arrival(demo_store, driver, given, order=order)
+        fits = [o.feasible for o in found.options]
+        assert fits == sorted(fits, reverse=True)
+        values = [
+            {
+                "fewest nights away": o.costs.nights_away,
+                "fewest flights": o.costs.flights,
+                "least travel": o.costs.travel_h,
+                "most SpO2 on race morning": -o.outlook.race_spo2_pct.mean,
+            }[order]
+            for o in found.options
+            if o.feasible and o.costs and o.outlook
+        ]
+        assert values == sorted(values)
+        assert len(set(values)) > 1
+
+
+def test_limits_and_order_are_kept_for_every_plan(demo_store: Store) -> None:
+    asked = replace(season_limits(demo_store), lowest_race_spo2_pct=92.0, most_nights_away=5)
+    keep_asked(demo_store, asked, "fewest flights", by="coach")
+    assert season_limits(demo_store) == asked
+    found = looked_at(demo_store, "Ilse", "Talquime")
+    assert (found.limits, found.order) == (asked, "fewest flights")
+    with pytest.raises(InputError, match="Lowest SpO2 wanted"):
+        keep_asked(demo_store, replace(asked, lowest_race_spo2_pct=3.0), "fewest flights", by="coach")
+    assert season_limits(demo_store) == asked
+
+
+def test_the_next_high_round_has_not_begun(demo_store: Store) -> None:
+    calendar, at = read_calendar(demo_store), now(demo_store)
+    coming = next_high_round(calendar, at)
+    assert coming is not None
+    assert coming.name == "Sumaqara Round"
+    late = next_high_round(calendar, at + timedelta(days=200))
+    assert late is not None
+    assert late.name == "Kestrelrand Round"  # the last high one, when none is ahead
+
+
+@pytest.mark.parametrize("asked", ["10", "Talquime Round", "talquime", "  TALQ "])
+def test_a_round_by_number_name_or_beginning(demo_store: Store, asked: str) -> None:
+    assert find_round(read_calendar(demo_store), asked, now(demo_store)).number == 10
+
+
+@pytest.mark.parametrize(
+    ("asked", "error", "words"),
+    [
+        ("99", NotFoundError, "there is no round '99'"),
+        ("", NotFoundError, "there is no round"),
+        ("T", InputError, "one round; it fits Tsukigane Round, Talquime Round"),
+    ],
+)
+def test_a_round_that_is_not_there_or_not_clear(
+    demo_store: Store, asked: str, error: type[Exception], words: str
+) -> None:
+    with pytest.raises(error, match=words):
+        find_round(read_calendar(demo_store), asked, now(demo_store))
+
+
+def test_looking_writes_nothing(demo_store: Store) -> None:
+    before = demo_store.version(), everything(demo_store), demo_store.change_sets()
+    for asked in ("Talquime", "Sumaqara"):
+        found = looked_at(demo_store, "Tomé", asked)
+        for option in found.options:
+            plan_days(found, option)
+            refused(found, option)
+            choices(demo_store, found.driver, found.round)
+    assert (demo_store.version(), everything(demo_store), demo_store.change_sets()) == before
+
+
+# Days ---------------------------------------------------------------------------------------------------
+
+
+def test_the_days_of_a_way(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Bastien", "Sumaqara")
+    option = next(
+        o for o in found.options if o.title == "home first, arrive the day before the first session"
+    )
+    days = plan_days(found, option)
+    assert [d.day for d in days] == [days[0].day + timedelta(days=i) for i in range(len(days))]
+    assert (days[0].day.isoformat(), days[-1].day.isoformat()) == ("2026-07-29", "2026-08-09")
+    assert option.outlook is not None
+    last = days[-1]
+    assert last.woke_in == found.venue
+    # Beds at 2 900 m, track at 3 200 m, sessions from Friday to Sunday: the demo's own figures.
+    assert [d.track_m for d in days[-4:]] == [None, 3200.0, 3200.0, 3200.0]
+    assert last.bed_m == 2900.0
+    assert last.expected is not None
+    # On waking at the beds the reading is higher than an hour or two later at the track.
+    assert 0.0 < last.expected.mean - option.outlook.race_spo2_pct.mean < 3.0
+    assert last.expected.low < last.expected.mean < last.expected.high
+    assert sum(len(d.legs) for d in days) == 2
+    shown = {d.day: d.light for d in days if d.light is not None}
+    assert {light.day: light for light in option.outlook.light}.items() <= shown.items()
+    assert days[0].is_quiet is False
+    assert any(d.is_quiet for d in days)
+    # Leaving before the usual time of waking, the reading comes before the door and not in the cabin.
+    assert days[0].expected is not None
+    assert days[0].expected.mean > 96.0
+
+
+def test_a_way_that_cannot_be_built_has_no_days(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Bastien", "Sumaqara")
+    tent = next(o for o in found.options if o.kind == "tent at home")
+    assert plan_days(found, tent) == []
+    assert found.arrives_on(tent) is None
+
+
+# Choosing -----------------------------------------------------------------------------------------------
+
+
+def test_choosing_changes_season_driver_and_this_morning(demo_store: Store) -> None:
+    """The round has begun: planning in hindsight corrects what is past, and the screens follow."""
+    found = looked_at(demo_store, "Bastien", "Talquime")
+    assert found.in_hindsight
+    row, cost, view = (
+        row_of(demo_store, "Bastien"),
+        cost_of(demo_store, found),
+        driver_view(demo_store, read_calendar(demo_store), found.driver, now(demo_store)),
+    )
+    option = next(o for o in found.options if o.title.startswith("go as early as the gap allows"))
+    choose(demo_store, found, option, by="coach")
+
+    after = driver_view(demo_store, read_calendar(demo_store), found.driver, now(demo_store))
+    assert after.beds != view.beds
+    assert after.expected_now.mean_pct != view.expected_now.mean_pct
+    assert after.expected_now.words == "for him on day 6"  # Monday is day 1, the demo stands on Saturday
+    assert row_of(demo_store, "Bastien").where.arrived_at == option.arrives_at(found.point)
+    assert row_of(demo_store, "Bastien").expected.words != row.expected.words
+    assert row_of(demo_store, "Bastien").expected.low_pct != row.expected.low_pct
+    now_given = cost_of(demo_store, found)
+    assert now_given.nights_there == cost.nights_there + 3
+    assert now_given.outlook is not None
+    assert option.outlook is not None
+    # The same chain, with what readings teach along the new course.
+    assert now_given.outlook.race_capacity_pct.mean == pytest.approx(option.outlook.race_capacity_pct.mean)
+    assert now_given.outlook.race_spo2_pct.mean == pytest.approx(option.outlook.race_spo2_pct.mean, abs=1.0)
+
+
+def test_undo_puts_back_exactly_what_was_planned(demo_store: Store) -> None:
+    before, row = everything(demo_store), row_of(demo_store, "Bastien")
+    found = looked_at(demo_store, "Bastien", "Talquime")
+    first = choose(demo_store, found, another(found), by="coach")
+    between = everything(demo_store)
+    again = looked_at(demo_store, "Bastien", "Talquime")
+    second = choose(demo_store, again, another(again), by="assistant")
+    assert choices(demo_store, found.driver, found.round) == [second, first]
+    assert choices(demo_store, driver_called(demo_store, "Ilse"), found.round) == []
+
+    undo(demo_store, second, by="coach")
+    assert everything(demo_store) == between
+    assert choices(demo_store, found.driver, found.round) == [first]
+    undo(demo_store, first, by="coach")
+    assert everything(demo_store) == before
+    assert row_of(demo_store, "Bastien") == row
+    assert choices(demo_store, found.driver, found.round) == []
+    with pytest.raises(StoreError, match="undone already"):
+        undo(demo_store, first, by="coach")
+    assert demo_store.check() == []
+
+
+def entries(itinerary: Itinerary, keep: Iterable[Stay | Leg]) -> list[Stay | Leg]:
+    kept = set(keep)
+    return [each for each in itinerary.entries if each in kept]
+
+
+@pytest.mark.parametrize("asked", ["Talquime", "Sumaqara", "Wenchara"])
+def test_only_the_stretch_before_the_round_is_written_anew(demo_store: Store, asked: str) -> None:
+    found = looked_at(demo_store, "Tomé", asked)
+    others = [s for s in demo_store.all(Stay) if s.driver_id != found.driver.id]
+    choose(demo_store, found, another(found), by="coach")
+    after = read_calendar(demo_store).itinerary_of(found.driver)
+    untouched = [
+        each
+        for each in found.planned.entries
+        if ends_at(each) < found.gap.free_from or starts_at(each) > found.point.race_at
+    ]
+    assert len(untouched) > 20
+    assert entries(after, untouched) == untouched
+    assert problems(after, found.setting.places) == []
+    assert [s for s in demo_store.all(Stay) if s.driver_id != found.driver.id] == others
+    assert len(demo_store.change_sets()) == 2  # the demo's and this one
+    assert demo_store.change_sets(1)[0].why.startswith(f"{found.driver.name} to {found.round.name}: ")
+
+
+def test_what_is_chosen_is_what_is_planned_then(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Ilse", "Sumaqara")
+    option = another(found)
+    choose(demo_store, found, option, by="coach")
+    after = looked_at(demo_store, "Ilse", "Sumaqara")
+    [planned] = [o for o in after.options if is_planned(after, o)]
+    assert planned.kind == "usual plan"
+    assert after.arrives_on(planned) == found.arrives_on(option)
+    assert planned.costs == option.costs
+    with pytest.raises(InputError, match="another one than what is planned already"):
+        choose(demo_store, after, planned, by="coach")
+
+
+def move_a_bed(store: Store, found: Arrival) -> None:
+    store.change(replace(found.planned.stays[0], bed_elevation_m=50.0), by="assistant")
+
+
+def add_a_commitment(store: Store, found: Arrival) -> None:
+    at = datetime(2026, 11, 20, 9, tzinfo=UTC)
+    store.add(
+        Commitment(found.driver.id, "filming", found.venue.id, at, at + timedelta(hours=3)), by="assistant"
+    )
+
+
+def forbid_high_beds(store: Store, found: Arrival) -> None:
+    store.change(replace(found.driver, highest_bed_elevation_m=1000.0), by="physician")
+
+
+def correct_a_place(store: Store, found: Arrival) -> None:
+    store.change(replace(found.venue, bed_elevation_m=2400.0), by="assistant")
+
+
+@pytest.mark.parametrize("happening", [move_a_bed, add_a_commitment, forbid_high_beds, correct_a_place])
+def test_a_choice_from_a_season_that_is_no_more_is_refused(demo_store: Store, happening) -> None:  # type: ignore[no-untyped-def]
+    found = looked_at(demo_store, "Ilse", "Talquime")
+    happening(demo_store, found)
+    before = demo_store.version(), everything(demo_store)
+    with pytest.raises(StoreError, match="the season has changed since the ways to Talquime Round"):
+        choose(demo_store, found, another(found), by="coach")
+    assert (demo_store.version(), everything(demo_store)) == before
+    assert choices(demo_store, found.driver, found.round) == []
+
+
+def test_a_reading_in_between_does_not_stand_in_the_way(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Ilse", "Sumaqara")
+    demo_store.add(Reading(found.driver.id, found.venue.id, now(demo_store), 92.0), by="Ilse Varnholt")
+    choose(demo_store, found, another(found), by="coach")
+    assert len(choices(demo_store, found.driver, found.round)) == 1
+
+
+def test_a_way_that_something_stands_against_is_refused(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Bastien", "Talquime")
+    before = demo_store.version()
+    late = next(o for o in found.options if o.kind == "the morning itself")
+    with pytest.raises(InputError, match="from landing to the first session"):
+        choose(demo_store, found, late, by="coach")
+    tent = next(o for o in found.options if o.kind == "tent at home")
+    with pytest.raises(InputError, match="no physician's note"):
+        choose(demo_store, found, tent, by="coach", ascent_reason="because")
+    assert demo_store.version() == before
+
+
+def test_a_write_that_fails_leaves_everything(demo_store: Store, monkeypatch: pytest.MonkeyPatch) -> None:
+    found = looked_at(demo_store, "Ilse", "Talquime")
+    before = demo_store.version(), everything(demo_store)
+
+    def fails(*given: object, **named: object) -> None:
+        raise StoreError("the disk is full")
+
+    monkeypatch.setattr(Store, "add_all", fails)
+    with pytest.raises(StoreError, match="the disk is full"):
+        choose(demo_store, found, another(found), by="coach")
+    assert (demo_store.version(), everything(demo_store)) == before
+
+
+@pytest.mark.parametrize(
+    ("at", "earliest"),
+    [
+        ("2026-08-03T12:00:00+00:00", "2026-08-04"),  # at home since 29 July, by the demo's plan
+        ("2026-07-29T07:00:00+00:00", "2026-07-30"),  # in the air on the way home until that noon
+    ],
+)
+def test_a_round_ahead_is_planned_from_now_on(demo_store: Store, at: str, earliest: str) -> None:
+    """What has been is no longer to be chosen: every way leaves the past as it was."""
+    demo_store.set_setting(FROZEN_CLOCK, at)
+    found = looked_at(demo_store, "Bastien", "Sumaqara", NO_LIMITS)
+    assert not found.in_hindsight
+    built = [o for o in found.options if o.itinerary is not None]
+    assert len(built) > 4
+    for option in built:
+        assert option.itinerary is not None
+        assert [e for e in option.itinerary.entries if ends_at(e) <= now(demo_store)] == [
+            e for e in found.planned.entries if ends_at(e) <= now(demo_store)
+        ]
+        assert all(leg.id or leg.depart_at >= now(demo_store) for leg in option.itinerary.legs)
+    arrivals = [found.arrives_on(o) for o in built]
+    assert min(day for day in arrivals if day).isoformat() == earliest
+
+
+def test_a_driver_who_is_there_already_is_shown_what_is_left(demo_store: Store) -> None:
+    demo_store.set_setting(FROZEN_CLOCK, "2026-06-05T03:00:00+00:00")  # the evening before the first session
+    found = looked_at(demo_store, "Bastien", "Talquime", NO_LIMITS)
+    assert [o.kind for o in found.options if o.feasible] == ["usual plan"]
+
+
+# The ascent rule ----------------------------------------------------------------------------------------
+
+
+@pytest.fixture
+def high_store(demo_store: Store) -> Store:
+    """The demo with the beds of one venue at 3 700 m: one night from low ground gains 700 m above 3 000 m."""
+    place = next(p for p in demo_store.all(Place) if p.name == "Sumaqara")
+    demo_store.change(replace(place, bed_elevation_m=3700.0), by="coach")
+    return demo_store
+
+
+def test_above_3000_m_the_rule_holds_unless_a_reason_is_kept(high_store: Store) -> None:
+    """At most 500 m a night above 3 000 m (published: Wilderness Medical Society 2024)."""
+    found = looked_at(high_store, "Bastien", "Sumaqara", NO_LIMITS)
+    assert found.options
+    assert not any(o.feasible and o.outlook and o.outlook.ascent_warnings for o in found.options)
+    option = next(o for o in found.options if o.title == "home first, arrive 4 days before the first session")
+    assert ascent_failures(found, option) == list(option.why)
+    assert "700 m higher than the night before" in option.why[0]
+    for nothing in ("", "   "):
+        with pytest.raises(InputError, match="Too fast an ascent"):
+            choose(high_store, found, option, by="coach", ascent_reason=nothing)
+    with pytest.raises(InputError, match="at most 300 characters"):
+        choose(high_store, found, option, by="coach", ascent_reason="x" * 301)
+    assert refused(found, option, "agreed with the physician") == []
+    made = choose(high_store, found, option, by="coach", ascent_reason="agreed  with the physician, 3 June")
+
+    given, calendar = found.round, read_calendar(high_store)
+    reason = "agreed with the physician, 3 June"
+    assert made.ascent_reason == reason
+    assert ascent_reason_kept(high_store, calendar, found.driver, given) == reason
+    assert high_store.change_sets(1)[0].why.endswith(f"ascent rule set aside: {reason}")
+    undo(high_store, made, by="coach")
+    assert ascent_reason_kept(high_store, read_calendar(high_store), found.driver, given) == ""
+
+
+def test_a_reason_is_not_kept_where_the_rule_holds(demo_store: Store) -> None:
+    found = looked_at(demo_store, "Ilse", "Sumaqara")
+    made = choose(demo_store, found, another(found), by="coach", ascent_reason="not needed")
+    assert made.ascent_reason == ""
+    assert "set aside" not in demo_store.change_sets(1)[0].why
+    assert ascent_reason_kept(demo_store, read_calendar(demo_store), found.driver, found.round) == ""
+
+
+def test_a_reason_excuses_the_ascent_and_nothing_else(high_store: Store) -> None:
+    driver = driver_called(high_store, "Bastien")
+    high_store.change(replace(driver, highest_bed_elevation_m=3000.0), by="physician")
+    found = looked_at(high_store, "Bastien", "Sumaqara", replace(NO_LIMITS, most_nights_away=2))
+    option = next(o for o in found.options if o.title == "home first, arrive 4 days before the first session")
+    left = " ".join(refused(found, option, "agreed"))
+    assert "no higher than 3000 m" in left
+    assert "at most 2 are asked" in left
+    assert "Too fast an ascent" not in left
+
+
+# Beginnings ---------------------------------------------------------------------------------------------
+
+
+def test_a_driver_with_nothing_planned_gets_a_whole_itinerary(demo_store: Store) -> None:
+    home = next(p for p in demo_store.all(Place) if p.name == "Vessaly")
+    driver = demo_store.add(Driver("Nova Nobody", "woman", home.id, 60.0, 168.0), by="coach")
+    given = next(r for r in demo_store.all(Round) if r.name == "Wenchara Round")
+    found = arrival(demo_store, driver, given)
+    assert found.planned.entries == ()
+    assert not any(is_planned(found, o) for o in found.options)
+    made = choose(demo_store, found, found.options[0], by="coach")
+    after = read_calendar(demo_store).itinerary_of(driver)
+    assert problems(after, found.setting.places) == []
+    assert [e.place_id for e in after.stays] == [home.id, given.place_id, home.id]
+    undo(demo_store, made, by="coach")
+    assert read_calendar(demo_store).itinerary_of(driver).entries == ()
+
+
+@pytest.mark.parametrize("asked", ["Kestrelrand Round", "Azambria Round", "Talquime Round"])
+def test_rounds_outside_of_what_is_planned_can_be_reached_too(demo_store: Store, asked: str) -> None:
+    """One round planned alone in September; then one just after, one long after, one long before it."""
+    home = next(p for p in demo_store.all(Place) if p.name == "Vessaly")
+    demo_store.set_setting(FROZEN_CLOCK, "2026-01-10T12:00:00+00:00")
+    driver = demo_store.add(Driver("Nova Nobody", "woman", home.id, 60.0, 168.0), by="coach")
+    for name in ("Wenchara Round", asked):
+        given = next(r for r in demo_store.all(Round) if r.name == name)
+        found = arrival(demo_store, driver, given)
+        choose(demo_store, found, found.options[0], by="coach")
+        calendar = read_calendar(demo_store)
+        after = calendar.itinerary_of(driver)
+        assert problems(after, calendar.places) == []
+        there = after.entries[after.index_at(calendar.starts_at(given)) or 0]
+        assert isinstance(there, Stay)
+        assert there.place_id == given.place_id
