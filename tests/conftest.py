@@ -13,10 +13,20 @@ from planner.services.importing import load_demo
 from planner.store.store import Store
 
 
+@pytest.fixture(scope="session")
+def empty_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """A store file without records, made once; not to be written to."""
+    path = tmp_path_factory.mktemp("empty") / "empty.db"
+    Store.open(path).close()
+    return path
+
+
 @pytest.fixture
-def store(tmp_path: Path) -> Iterator[Store]:
-    """A new, empty store in a file of its own."""
-    opened = Store.open(tmp_path / "planner.db")
+def store(empty_file: Path, tmp_path: Path) -> Iterator[Store]:
+    """An empty store in a file of its own."""
+    path = tmp_path / "planner.db"
+    shutil.copyfile(empty_file, path)
+    opened = Store.open(path)
     yield opened
     opened.close()
 

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+import shutil
+from collections.abc import Iterator
 from dataclasses import replace
 from datetime import date
 from math import inf, nan
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -149,10 +152,24 @@ def refused_id(case: object) -> str:
     return case.__name__ if isinstance(case, type) else ascii(case)[:24]
 
 
+@pytest.fixture(scope="module")
+def team_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """A store file with a record of every kind, made once; not to be written to."""
+    path = tmp_path_factory.mktemp("team") / "team.db"
+    built = Store.open(path)
+    keep_every_kind(built)
+    built.close()
+    return path
+
+
 @pytest.fixture
-def team(store: Store) -> Store:
-    keep_every_kind(store)
-    return store
+def team(team_file: Path, tmp_path: Path) -> Iterator[Store]:
+    """The same in a file of its own."""
+    path = tmp_path / "planner.db"
+    shutil.copyfile(team_file, path)
+    opened = Store.open(path)
+    yield opened
+    opened.close()
 
 
 @pytest.mark.parametrize(("kind", "field", "value", "words"), REFUSED, ids=refused_id)
