@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 from datetime import UTC, date, datetime, timedelta
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -45,17 +46,16 @@ def test_nights_follow_the_local_clock() -> None:
 
 
 def test_a_night_on_the_way_has_no_place() -> None:
-    leg = Leg(
-        7,
-        HOME.id,
-        BAY.id,
-        datetime(2031, 3, 5, 15, tzinfo=UTC),
-        datetime(2031, 3, 6, 20, tzinfo=UTC),
-        "flight",
-    )
-    trip = Itinerary(7, (leg, Stay(7, BAY.id, leg.arrive_at, leg.arrive_at + timedelta(days=2))))
-    nights = nights_of(trip, PLACES, leg.depart_at, leg.arrive_at + timedelta(days=2))
-    assert [n.place_id for n in nights] == [None, BAY.id, BAY.id]
+    # East by night, and west over the date line, where the calendar loses a day more.
+    leave, land = datetime(2031, 3, 5, 15, tzinfo=UTC), datetime(2031, 3, 6, 20, tzinfo=UTC)
+    home = Stay(7, HOME.id, leave - timedelta(days=2), leave)
+    leg = Leg(7, HOME.id, BAY.id, leave, land, "flight")
+    trip = Itinerary(7, (home, leg, Stay(7, BAY.id, land, land + timedelta(days=2))))
+    nights = nights_of(trip, PLACES, home.arrive_at, land + timedelta(days=2))
+    assert [(n.evening.day, n.place_id) for n in nights] == [
+        (3, HOME.id), (4, HOME.id), (5, None), (6, None), (7, BAY.id), (8, BAY.id)
+    ]  # fmt: skip
+    assert all(before.at < after.at for before, after in pairwise(nights))
 
 
 def test_a_tent_night_amounts_to_its_equivalent() -> None:

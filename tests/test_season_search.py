@@ -89,13 +89,15 @@ def test_undominated_against_the_definition() -> None:
     for n in (1, 2, 50, 700):
         cost, first, second = (rng.integers(0, 12, n).astype(float) for _ in range(3))
         key = rng.integers(0, 2, n).astype(float)
-        kept = undominated(cost, first, second, key)
+        travel_h = rng.uniform(0.0, 20.0, n)
+        kept = undominated(cost, first, second, key, travel_h)
         for i in range(n):
             beats = (cost <= cost[i]) & (first >= first[i]) & (second >= second[i]) & (key == key[i])
             strictly = beats & ((cost < cost[i]) | (first > first[i]) | (second > second[i]))
             equals = beats & ~strictly
             assert (i in kept) <= (not strictly.any())
-            assert strictly.any() or len(set(np.flatnonzero(equals)) & set(kept)) == 1
+            same = np.flatnonzero(equals)
+            assert strictly.any() or set(same) & set(kept) == {same[travel_h[same].argmin()]}
 
 
 def test_progress_and_cancel() -> None:

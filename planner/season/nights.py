@@ -4,20 +4,22 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from datetime import date, datetime, time, timedelta
+from datetime import UTC, date, datetime, time, timedelta
 from functools import lru_cache
+from itertools import pairwise
 from typing import Final
 from zoneinfo import ZoneInfo
 
 from planner.physiology.air import site_pressure
 from planner.physiology.illness import LARGEST_START_M
 from planner.physiology.oxygen import equivalent_elevation_m, inspired_po2_mmhg
-from planner.season.itinerary import Itinerary, begins_in
-from planner.season.model import Leg, Place, Stay
+from planner.season.itinerary import Itinerary
+from planner.season.model import Place, Stay
 
 # A night counts as spent where the driver is at this local time: judgement.
 MIDDLE_OF_THE_NIGHT: Final = time(3)
 ONE_DAY: Final = timedelta(days=1)
+LONGEST_WAY: Final = timedelta(days=4)  # between two nights in bed
 
 
 @dataclass(frozen=True)
@@ -51,24 +53,24 @@ class Ascent:
 def nights_of(
     itinerary: Itinerary, places: Mapping[int, Place], from_at: datetime, until: datetime
 ) -> list[Night]:
-    """Every night whose middle lies from `from_at` up to `until`; on the way the start's zone counts."""
-    found: list[Night] = []
-    for entry in itinerary.entries:
-        start, end = _span(entry)
-        if end <= from_at or start >= until:
-            continue
-        place = places[begins_in(entry)]
-        zone = ZoneInfo(place.zone)
-        morning = max(start, from_at).astimezone(zone).date()
-        while (
-            middle := datetime.combine(morning, MIDDLE_OF_THE_NIGHT, zone).astimezone(ZoneInfo("UTC"))
-        ) < end:
-            if max(start, from_at) <= middle < until:
-                found.append(_night(entry, place, morning - ONE_DAY, middle))
-            morning += ONE_DAY
-    # Flying west by day the small hours of the start pass on the way, and those of the goal in bed there.
-    in_bed = {night.evening for night in found if night.place_id is not None}
-    return [night for night in found if night.place_id is not None or night.evening not in in_bed]
+    """Every night whose middle lies from `from_at` up to `until`.
+
+    A night in bed is one whose small hours pass there by the local clock. A calendar day between two nights
+    in bed that has none is a night on the way; flying west by day there is none, over the date line one more.
+    """
+    in_bed: list[Night] = []
+    for stay in itinerary.stays:
+        if stay.depart_at > from_at - LONGEST_WAY and stay.arrive_at < until + LONGEST_WAY:
+            in_bed += _in_bed(stay, places[stay.place_id])
+    found = in_bed[:1]
+    for before, after in pairwise(in_bed):
+        on_the_way = (after.evening - before.evening).days - 1
+        for lost in range(on_the_way):
+            at = before.at + (after.at - before.at) * (lost + 1) / (on_the_way + 1)
+            evening = before.evening + (lost + 1) * ONE_DAY
+            found.append(Night(evening, at, None, before.bed_m, before.bed_m))
+        found.append(after)
+    return [night for night in found if from_at <= night.at < until]
 
 
 def ascent_to(nights: Sequence[Night], home: Place) -> Ascent:
@@ -102,16 +104,15 @@ def _tent_elevation_m(bed_m: float, latitude_deg: float, oxygen_fraction: float)
     return max(float(equivalent_elevation_m(inspired, latitude_deg)), bed_m)
 
 
-def _night(entry: Stay | Leg, place: Place, evening: date, middle: datetime) -> Night:
-    if isinstance(entry, Leg):
-        return Night(evening, middle, None, place.bed_elevation_m, place.bed_elevation_m)
-    bed_m = place.bed_elevation_m if entry.bed_elevation_m is None else entry.bed_elevation_m
-    tent = entry.tent_oxygen_fraction if entry.tent_hours_per_night > 0.0 else None
+def _in_bed(stay: Stay, place: Place) -> list[Night]:
+    bed_m = place.bed_elevation_m if stay.bed_elevation_m is None else stay.bed_elevation_m
+    tent = stay.tent_oxygen_fraction if stay.tent_hours_per_night > 0.0 else None
     sleeping_m = sleeping_elevation_m(place, bed_m, tent)
-    return Night(evening, middle, place.id, bed_m, sleeping_m, tent is not None)
-
-
-def _span(entry: Stay | Leg) -> tuple[datetime, datetime]:
-    if isinstance(entry, Stay):
-        return entry.arrive_at, entry.depart_at
-    return entry.depart_at, entry.arrive_at
+    zone = ZoneInfo(place.zone)
+    morning = stay.arrive_at.astimezone(zone).date()
+    found = []
+    while (middle := datetime.combine(morning, MIDDLE_OF_THE_NIGHT, zone).astimezone(UTC)) < stay.depart_at:
+        if middle >= stay.arrive_at:
+            found.append(Night(morning - ONE_DAY, middle, place.id, bed_m, sleeping_m, tent is not None))
+        morning += ONE_DAY
+    return found

@@ -77,6 +77,7 @@ class _Labels:
     """Partial plans that end in one bed on a gate's night, with the label and the way that each came by."""
 
     cost: FloatArray
+    travel_h: FloatArray
     benefit: FloatArray
     state: FloatArray
     offset: FloatArray
@@ -171,6 +172,7 @@ class _Run:
         zero, none = np.zeros(1), np.zeros(1, dtype=np.intp)
         start = _Labels(
             cost=zero,
+            travel_h=zero,
             benefit=np.full(1, np.inf) if problem.combination == "worst" else zero,
             state=np.full(1, problem.start_state),
             offset=np.full(1, problem.start_offset_h),
@@ -233,7 +235,8 @@ class _Run:
             settled = np.where(clock == 0.0, 0.0, labels.offset)
             labels = replace(labels, offset=settled).taken(keeps)
             first, second = self.bounds.comparisons(night, labels.benefit, labels.state)
-            here[bed] = labels.taken(undominated(labels.cost, first, second, _keys(labels, clock[keeps])))
+            keys = _keys(labels, clock[keeps])
+            here[bed] = labels.taken(undominated(labels.cost, first, second, keys, labels.travel_h))
         self.gates.append(_Gate(night, here, np.concatenate(rows) if rows else np.zeros((0, 0), np.intp)))
 
     def _continued(
@@ -251,6 +254,7 @@ class _Run:
                     int(bed),
                     _Labels(
                         cost=labels.cost[label] + ways.cost[way],
+                        travel_h=labels.travel_h[label] + ways.travel_h[way],
                         benefit=labels.benefit[label],
                         state=state[way, label],
                         offset=ways.offset_h[way],
@@ -356,12 +360,15 @@ def _slopes(each: DayRound, states: FloatArray, of_spo2: bool) -> tuple[float, f
     return max(lowest, 0.0) * (1.0 - SLOPE_MARGIN), highest * (1.0 + SLOPE_MARGIN)
 
 
-def undominated(cost: FloatArray, first: FloatArray, second: FloatArray, key: FloatArray) -> IntArray:
-    """Indices of the labels that no other of the same key beats or equals; of equal ones the first stays.
+def undominated(
+    cost: FloatArray, first: FloatArray, second: FloatArray, key: FloatArray, travel_h: FloatArray
+) -> IntArray:
+    """Indices of the labels that no other of the same key beats or equals.
 
-    A label is beaten by one that costs no more and is no lower in both figures.
+    A label is beaten by one that costs no more and is no lower in both figures; of equal ones the one with
+    the least travel stays.
     """
-    order = np.lexsort((-second, -first, cost))
+    order = np.lexsort((travel_h, -second, -first, cost))
     kept = [_undominated_of_one_key(order[key[order] == k], first, second) for k in np.unique(key)]
     return np.concatenate(kept) if kept else order
 

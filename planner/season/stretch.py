@@ -41,6 +41,7 @@ class Ways:
 
     bed: IntArray
     cost: FloatArray
+    travel_h: FloatArray  # decides only between ways that are alike in everything else
     offset_h: FloatArray
     climbing: IntArray
     risk: IntArray
@@ -53,6 +54,7 @@ class _Heads:
 
     bed: IntArray
     cost: FloatArray
+    travel_h: FloatArray
     state: FloatArray  # (n, samples)
     slope: FloatArray
     offset: FloatArray
@@ -83,7 +85,7 @@ class Crossing:
         heads = {entry.night: _start(entry, samples)}
         for night in range(entry.night + 1, until + 1):
             made = [
-                self._moved(heads[night - 1 - lost], night, lost)
+                self._moved(heads[night - 1 - lost], night, lost, state_counts)
                 for lost in LOST
                 if night - 1 - lost in heads
             ]
@@ -98,11 +100,13 @@ class Crossing:
             heads[night] = here.taken(_kept(here, key, samples, convex))
         return self._traced(heads, entry.night, until)
 
-    def _moved(self, old: _Heads, night: int, lost: int) -> _Heads:
+    def _moved(self, old: _Heads, night: int, lost: int, state_counts: bool) -> _Heads:
         moves = self.moves
         head, bed = np.nonzero(moves.allowed[night, lost][old.bed])
         before = old.bed[head]
-        state, slope = through(moves.pieces(night, lost, before, bed), old.state[head], old.slope[head])
+        state, slope = old.state[head], old.slope[head]
+        if state_counts:
+            state, slope = through(moves.pieces(night, lost, before, bed), state, slope)
         climbing, risk = moves.ascent_after(old.climbing[head], old.risk[head], before, bed)
         if self.problem.clock_counts[night]:
             offset = moves.offset_after(old.offset[head], night, lost, before, bed)
@@ -111,6 +115,7 @@ class Crossing:
         return _Heads(
             bed=bed,
             cost=old.cost[head] + moves.cost[lost, before, bed],
+            travel_h=old.travel_h[head] + self.problem.hours[before, bed],
             state=state,
             slope=slope,
             offset=offset,
@@ -137,7 +142,7 @@ class Crossing:
                 here = heads[night]
                 beds[i, night - start - 1] = here.bed[head]
                 night, head = int(here.from_night[head]), int(here.from_head[head])
-        return Ways(last.bed, last.cost, last.offset, last.climbing, last.risk, beds)
+        return Ways(last.bed, last.cost, last.travel_h, last.offset, last.climbing, last.risk, beds)
 
     def states_after(self, entry: Entry, ways: Ways, states: FloatArray) -> FloatArray:
         """(ways, states) the state at the end of each way for each state at its beginning."""
@@ -165,6 +170,7 @@ def _start(entry: Entry, samples: FloatArray) -> _Heads:
     return _Heads(
         bed=one * entry.bed,
         cost=np.zeros(1),
+        travel_h=np.zeros(1),
         state=samples[None, :],
         slope=np.ones((1, len(samples))),
         offset=np.full(1, entry.offset_h),
@@ -193,7 +199,8 @@ def _kept(heads: _Heads, clock: FloatArray, samples: FloatArray, convex: bool) -
     key = np.stack(
         [heads.bed, heads.climbing, heads.risk, np.round(clock * 10.0**OFFSET_DIGITS).astype(np.intp)]
     )
-    order = np.lexsort((-heads.state[:, -1], -heads.state[:, 0], heads.cost, *key))
+    by_state = (-heads.state[:, -1], -heads.state[:, 0])
+    order = np.lexsort((heads.travel_h, *by_state, heads.cost, *key))
     if not len(order):
         return order
     group = np.concatenate([[0], np.cumsum((np.diff(key[:, order], axis=1) != 0).any(axis=0))])

@@ -25,7 +25,7 @@ from planner.ui.page import Context, line, note_for_next_run
 from planner.ui.season_question import ask
 from planner.ui.tables import note, table
 from planner.ui.text import literal
-from planner.wording import DASH, THIN, counted, number, per_cent, per_cent_range
+from planner.wording import DASH, NO_BREAK, counted, number, per_cent, per_cent_range
 
 MOST_LISTED: Final = 10
 _FOUND: Final = "plans of the season"
@@ -242,7 +242,7 @@ def _pressed(chart_key: str) -> int | None:
 
 
 def _nights(cost: float) -> str:
-    return f"{number(cost, 1).removesuffix('.0')}{THIN}nights"
+    return f"{number(cost, 1).removesuffix('.0')}{NO_BREAK}nights"
 
 
 def _one(value: float) -> str:
