@@ -161,7 +161,7 @@ def _ground(x: alt.X, lowest: float, highest: float, unit: str, mode: Mode) -> l
         .transform_filter(f"width >= {NARROW_PX} || datum.apart")
         .encode(x=x, y=y, text="label:N")
     )
-    stands: dict[str, Any] = {"baseline": "bottom", "dy": -4, "fontSize": 11}
+    stands: dict[str, Any] = {"baseline": "bottom", "dy": -4, "fontSize": 12}
     return [
         land,
         names.mark_text(**stands, stroke=colour("page", mode), strokeWidth=3, strokeJoin="round"),

@@ -113,7 +113,7 @@ def _signposts(x: alt.X, y: alt.Y, mode: Mode) -> list[Any]:
         "align": "left",
         "baseline": "middle",
         "dx": 9,
-        "fontSize": 11,
+        "fontSize": 12,
         "limit": LONGEST_NAME_PX,
     }
     behind: dict[str, Any] = {"stroke": colour("page", mode), "strokeWidth": 3, "strokeJoin": "round"}

@@ -131,6 +131,7 @@ def dressed(chart: Any, mode: Mode = "screen") -> Any:
             "domain": False,
             "ticks": False,
             "labelPadding": 6,
+            "labelSeparation": 8,
         },
         legend={
             "labelColor": text,
