@@ -155,6 +155,7 @@ def test_grid_equals_plain_sums_over_a_dense_grid() -> None:
     bias = np.linspace(-4.0, 4.0, 81)
     p = POPULATION
     log_weight = -0.5 * breathing[:, None] ** 2 - 0.5 * (admixture / p.admixture_sd_pct) ** 2
+    of_device = {}
     for device in ("a", "b"):
         ours = [i for i, d in enumerate(devices) if d == device]
         log = -0.5 * (bias / p.device_bias_sd_pct) ** 2 + np.zeros((81, 61, 81))
@@ -173,6 +174,7 @@ def test_grid_equals_plain_sums_over_a_dense_grid() -> None:
             miss = read[i] - chain.saturation[:, None, None] + admixture[None, :, None] - bias
             sound = np.exp(-0.5 * miss**2 / variance) / np.sqrt(2.0 * np.pi * variance)
             log += np.log((1.0 - p.faulty_share) * sound + p.faulty_share / 60.0)
+        of_device[device] = log
         log_weight = log_weight + np.log(np.exp(log).sum(axis=2))
     weight = np.exp(log_weight - log_weight.max())
     weight /= weight.sum()
@@ -185,8 +187,28 @@ def test_grid_equals_plain_sums_over_a_dense_grid() -> None:
         sd = np.sqrt(marginal @ (values - mean) ** 2)
         assert estimate.mean == pytest.approx(mean + shift, abs=0.02)
         assert estimate.sd == pytest.approx(sd, abs=0.02)
+    for device, log in of_device.items():
+        rest = log_weight - np.log(np.exp(log).sum(axis=2))
+        joint = np.exp(log + rest[:, :, None] - log_weight.max())
+        marginal = joint.sum(axis=(0, 1)) / joint.sum()
+        mean = marginal @ bias
+        sd = np.sqrt(marginal @ (bias - mean) ** 2)
+        assert person.device_bias_pct[device].mean == pytest.approx(mean, abs=0.02)
+        assert person.device_bias_pct[device].sd == pytest.approx(sd, abs=0.02)
     assert person.usual_device == "a"
     assert person.device_bias_pct["b"].mean > person.device_bias_pct["a"].mean + 1.5
+
+
+def test_oximeters_that_contradict_each_other_leave_a_range() -> None:
+    """Products of so many likelihoods are zero in double precision; their logarithms are not."""
+    history = straight_to(3500.0)
+    at_h = np.arange(-1500, 1500) * 12.0
+    read = np.where(at_h < 0.0, 97.0, np.where(np.arange(at_h.size) % 2, 98.0, 80.0))
+    inspired, state = history.inspired_at(at_h), np.asarray(ventilatory_state_at(history, at_h))
+    person = learned(inspired, state, read, ["high", "low"] * 1500, at_h)
+    e = expected_spo2(history, 36.0, person=person)
+    assert 0.0 < e.low_spo2_pct < e.high_spo2_pct <= 100.0
+    assert np.isfinite([person.breathing.sd, person.device_bias_pct["low"].sd, person.own_share]).all()
 
 
 def test_another_oximeter_shifts_its_own_range_only() -> None:

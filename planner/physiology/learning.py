@@ -123,29 +123,29 @@ def _grids(
     miss, sd, weight = _misses(inspired, state, readings, at_h, pressure_sd_hpa, population)
     to_breathing = _cubic(COARSE_BREATHING, FINE_BREATHING)
     to_offset = _cubic(coarse, offset)
-    likelihoods: list[FloatArray] = []
-    for device in range(names.size):
-        ours = device_of == device
-        coarse_log = _log_likelihood(miss[:, ours], sd[:, ours], weight[ours], coarse, population)
-        fine_log = to_breathing @ coarse_log @ to_offset.T
-        likelihoods.append(np.exp(fine_log - fine_log.max()))
     # A device's bias is offset plus admixture's deviation; rows are offsets, columns admixtures.
     bias = offset[:, None] + admixture
     of_bias = np.exp(-0.5 * (bias / population.device_bias_sd_pct) ** 2)
-    of_bias_powers = [of_bias * bias**power for power in range(3)]
-    prior = np.exp(-0.5 * FINE_BREATHING[:, None] ** 2 - 0.5 * (admixture / population.admixture_sd_pct) ** 2)
-    summed_out = [_product(likelihood, of_bias) for likelihood in likelihoods]
-    person = _normalised(prior * np.prod(summed_out, axis=0) if summed_out else prior)
+    prior = -0.5 * FINE_BREATHING[:, None] ** 2 - 0.5 * (admixture / population.admixture_sd_pct) ** 2
+    likelihoods: list[FloatArray] = []  # logarithms, (breathing, offset)
+    summed_out: list[FloatArray] = []  # logarithms with the bias summed out, (breathing, admixture)
+    for device in range(names.size):
+        ours = device_of == device
+        coarse_log = _log_likelihood(miss[:, ours], sd[:, ours], weight[ours], coarse, population)
+        likelihoods.append(to_breathing @ coarse_log @ to_offset.T)
+        rows, top = _rows_scaled(likelihoods[device])
+        summed_out.append(top + np.log(_product(rows, of_bias)))
+    person = _normalised(prior + sum(summed_out))
     devices: dict[str, FloatArray] = {}
     biases: dict[str, Estimate] = {}
     for device, name in enumerate(names):
-        others = [s for i, s in enumerate(summed_out) if i != device]
-        rest = prior * np.prod(others, axis=0) if others else prior
-        devices[str(name)] = _normalised(likelihoods[device] * _product(rest, of_bias.T))
-        moments = [
-            float((likelihoods[device] * _product(rest, of_power.T)).sum()) for of_power in of_bias_powers
-        ]
-        mean, square = moments[1] / moments[0], moments[2] / moments[0]
+        rest, top = _rows_scaled(prior + sum(s for i, s in enumerate(summed_out) if i != device))
+        of_offset = _product(rest, of_bias.T)
+        weights = _normalised(likelihoods[device] + top + np.log(of_offset))
+        devices[str(name)] = weights
+        mean, square = (
+            float((weights * _product(rest, (of_bias * bias**power).T) / of_offset).sum()) for power in (1, 2)
+        )
         biases[str(name)] = Estimate(mean, float(np.sqrt(max(square - mean**2, 0.0))))
     return _Grids(admixture, offset, person, devices, biases)
 
@@ -285,5 +285,14 @@ def _plain_air_mmhg(elevation_m: float) -> float:
     return float(inspired_from_pressure(standard_pressure_hpa(elevation_m)))
 
 
-def _normalised(weights: FloatArray) -> FloatArray:
+def _rows_scaled(logarithm: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Each row over its own largest value, and the logarithm of that: no row vanishes, however unlikely."""
+    top = logarithm.max(axis=1, keepdims=True)
+    return np.exp(logarithm - top), top
+
+
+def _normalised(logarithm: FloatArray) -> FloatArray:
+    """Weights that sum to 1. From logarithms: readings of two devices may contradict each other so much that
+    every product of their likelihoods is too small for a double."""
+    weights = np.exp(logarithm - logarithm.max())
     return np.asarray(weights / weights.sum())
