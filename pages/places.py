@@ -62,7 +62,7 @@ def show_place(ctx: Context, place: Place) -> None:
     arrival = venues.days_there(air.beds)[0]
     answer(
         f"{place.name}: {pressure(air.track.pressure_hpa, ctx.units)}, "
-        f"{per_cent(air.track.oxygen_share_pct)} of the oxygen at sea level. Straight from there, expect "
+        f"{per_cent(air.track.oxygen_share_pct)} of the oxygen at sea level. Straight from sea level, expect "
         f"SpO2 {per_cent_range(arrival.low_pct, arrival.high_pct)} on arrival."
     )
     line(origin_of_pressure(place, in_force, air.track, ctx))

@@ -130,8 +130,12 @@ def own_range_in_words(person: PersonPosterior, pronoun: str = "the driver's") -
     noun = "reading" if person.readings == 1 else "readings"
     high = person.readings_above_1500_m
     above = f"{number(high) if high else 'none'} of them above {number(1500)} m"
-    share = per_cent(5.0 * round(20.0 * person.own_share))
-    return f"{number(person.readings)} {noun}, {above}: the range is about {share} {pronoun} own."
+    return f"{number(person.readings)} {noun}, {above}: the range is about {own_share(person)} {pronoun} own."
+
+
+def own_share(person: PersonPosterior) -> str:
+    """The share of the range that is the driver's own, to 5 %: more would say more than is known."""
+    return per_cent(5.0 * round(20.0 * person.own_share))
 
 
 def _objects(values: Sequence[Any]) -> NDArray[Any]:

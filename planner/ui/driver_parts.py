@@ -5,6 +5,7 @@ from __future__ import annotations
 import streamlit as st
 
 from planner.charts.theme import LEFT_OUT_STYLE, OUTCOME_STYLES
+from planner.monitoring.own_range import own_share
 from planner.physiology.person import Estimate
 from planner.physiology.population import POPULATION, population_model_summary
 from planner.services.course import POSSESSIVES
@@ -117,7 +118,7 @@ def draw_taught(view: DriverView) -> None:
         right=(1, 2),
     )
     note(
-        f"Mean ± standard deviation. About {per_cent(100 * person.own_share)} of what differs between people "
+        f"Mean ± standard deviation. About {own_share(person)} of what differs between people "
         f"and oximeters is settled by {whose} own readings; what differs from day to day stays in every "
         "range. Stronger breathing and less admixture give higher readings."
     )
