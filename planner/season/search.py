@@ -369,8 +369,11 @@ def undominated(
     the least travel stays.
     """
     order = np.lexsort((travel_h, -second, -first, cost))
-    kept = [_undominated_of_one_key(order[key[order] == k], first, second) for k in np.unique(key)]
-    return np.concatenate(kept) if kept else order
+    if not len(order) or (key == key[0]).all():
+        return _undominated_of_one_key(order, first, second)
+    return np.concatenate(
+        [_undominated_of_one_key(order[key[order] == k], first, second) for k in np.unique(key)]
+    )
 
 
 def _undominated_of_one_key(order: IntArray, first: FloatArray, second: FloatArray) -> IntArray:
@@ -398,7 +401,7 @@ def _undominated_of_one_key(order: IntArray, first: FloatArray, second: FloatArr
 
 def _keys(labels: _Labels, clock: FloatArray) -> FloatArray:
     """One number for each combination of climbing nights, class of ascent and body clock."""
-    _, code = np.unique(clock, return_inverse=True)
+    code = np.unique(clock, return_inverse=True)[1] if clock.any() else np.zeros(len(labels), dtype=np.intp)
     return (labels.climbing * 4 + labels.risk + 64 * code).astype(np.float64)
 
 
