@@ -150,9 +150,7 @@ def show_days(ctx: Context, air: venues.VenueAir) -> None:
         line("This elevation lies beyond the data that the model was fitted to: an extrapolation.")
 
 
-def show_measuring(
-    ctx: Context, place: Place, in_force: PressureMeasurement | None, times_kept: int
-) -> None:
+def show_measuring(ctx: Context, place: Place, in_force: PressureMeasurement | None, times_kept: int) -> None:
     """Draw the field for a measured pressure: it shows at once what it changes and is kept on a button.
 
     Under a new number of kept pressures the field is a new one, and empty.
@@ -166,6 +164,7 @@ def show_measuring(
             default="station pressure",
             required=True,
             key=f"pressure_kind_{place.id}",
+            persist_state="session",
         )
         value = st.number_input(
             f"{kind.capitalize()}, {ctx.units.pressure}",
@@ -173,6 +172,7 @@ def show_measuring(
             step=0.1 if ctx.units.pressure == "kPa" else 1.0,
             format="%.2f" if ctx.units.pressure == "kPa" else "%.1f",
             key=f"pressure_in_{ctx.units.pressure}_{place.id}_{times_kept}",
+            persist_state="session",
             placeholder="not measured",
             width=220,
         )

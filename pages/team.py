@@ -53,7 +53,7 @@ def draw_drivers(ctx: Context) -> None:
                 "allowed" if driver.tent_note else "no",
                 day(driver.iron_checked_on) if driver.iron_checked_on else DASH,
             ],
-            lambda driver: driver_form(ctx, driver, places),
+            lambda driver, kept: driver_form(ctx, driver, places, kept),
             right=(2, 3, 4),
         ),
     )
@@ -77,7 +77,7 @@ def draw_places(ctx: Context) -> None:
                 f"{number(place.longitude_deg, 2)}°",
                 place.zone,
             ],
-            lambda place: place_form(ctx, place),
+            lambda place, kept: place_form(ctx, place, kept),
             right=(1, 2, 3, 4),
         ),
     )
@@ -93,6 +93,7 @@ def draw_rounds(ctx: Context) -> None:
     rounds = sorted(ctx.store.all(Round), key=lambda each: each.number)
     sessions = sorted(ctx.store.all(Session), key=lambda each: each.starts_at)
     first = {each.round_id: each for each in reversed(sessions)}
+    next_number = max((each.number for each in rounds), default=0) + 1
 
     def row(given: Round) -> list[str]:
         place = known[given.place_id]
@@ -109,7 +110,7 @@ def draw_rounds(ctx: Context) -> None:
             "round",
             ["round", "number", "place", "track", "begins", "sessions"],
             row,
-            lambda given: round_form(given, places, max((each.number for each in rounds), default=0) + 1),
+            lambda given, kept: round_form(given, places, next_number, kept),
             right=(1, 3, 5),
         ),
     )
@@ -134,7 +135,7 @@ def draw_sessions(ctx: Context, given: Round, place: Place, sessions: list[Sessi
                 day_and_clock(session.starts_at, place.zone),
                 clock(session.ends_at, place.zone),
             ],
-            lambda session: session_form(ctx, session, given, place),
+            lambda session, kept: session_form(ctx, session, given, place, kept),
             key=str(given.id),
         ),
     )
@@ -163,7 +164,7 @@ def draw_commitments(ctx: Context) -> None:
                 day_and_clock(each.starts_at, where[each.place_id].zone),
                 day_and_clock(each.ends_at, where[each.place_id].zone),
             ],
-            lambda each: commitment_form(ctx, each, drivers, places),
+            lambda each, kept: commitment_form(ctx, each, drivers, places, kept),
         ),
     )
 

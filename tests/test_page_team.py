@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from datetime import UTC, date, datetime, time
 
 import pytest
@@ -83,6 +84,30 @@ def test_a_refused_place_names_the_field_and_keeps_what_was_typed(store: Store) 
     field(at, "number_input", "Elevation of the track").set_value(100.0)
     at = press(at, "Keep")
     assert [place.track_elevation_m for place in store.all(Place)] == [100.0]
+
+
+def test_what_was_half_typed_is_there_after_another_page(store: Store) -> None:
+    at = opened("Places")
+    field(at, "text_input", "Name").set_value("Vallmora")
+    field(at, "selectbox", "Time zone").set_value("Europe/Madrid")
+    field(at, "number_input", "Elevation of the track").set_value(100.0)
+    at.run()
+    for page in ("season", "team"):
+        at = at.switch_page(f"../pages/{page}.py").run()
+        assert not at.exception
+    assert field(at, "text_input", "Name").value == "Vallmora"
+    assert field(at, "selectbox", "Time zone").value == "Europe/Madrid"
+    assert field(at, "number_input", "Elevation of the track").value == 100.0
+    assert store.all(Place) == []
+
+
+def test_a_record_that_somebody_else_changed_is_shown_as_it_is_now(store: Store) -> None:
+    kept = store.add(VENUE, by="coach")
+    at = opened("Places")
+    at.selectbox(key="place_chosen").set_value(kept.id)
+    at.run()
+    store.change(replace(kept, track_elevation_m=2260.0), by="physician")
+    assert field(at.run(), "number_input", "Elevation of the track").value == 2260.0
 
 
 def test_a_place_is_typed_in_feet_and_kept_unchanged_when_not_touched(store: Store) -> None:

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from typing import Final
+from dataclasses import dataclass
+from typing import Any, Final
 
 import streamlit as st
 
@@ -73,6 +74,21 @@ def text_field(label: str, key: str, value: str = "", placeholder: str = "", hel
         label, value, live=True, placeholder=placeholder, help=help, key=key, persist_state="session"
     )
     return typed or ""
+
+
+@dataclass(frozen=True)
+class Kept:
+    """Names the fields of one record after it, so that what they hold stays in the session."""
+
+    record: str
+
+    def by(self, field: str) -> dict[str, Any]:
+        """What a widget needs to be kept."""
+        return {"key": f"{self.record} {field}", "persist_state": "session"}
+
+    def text(self, label: str, value: str = "", placeholder: str = "") -> str:
+        """A line of text."""
+        return text_field(label, f"{self.record} {label}", value, placeholder)
 
 
 def wanted(quantity: str) -> str:

@@ -10,6 +10,7 @@ import streamlit as st
 
 from planner.services.team import R, removed, save
 from planner.ui.errors import plain_errors
+from planner.ui.fields import Kept
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.tables import table
 from planner.ui.text import literal
@@ -22,14 +23,14 @@ class RecordList(Generic[R]):
     """One kind of record on the screen.
 
     `form` draws the widgets for a record (None = a new one) and returns what builds the record from what was
-    typed; it is called only when the form is kept, so an error leaves everything as it was typed.
+    typed; that is called only when the record is kept, so an error leaves everything as it was typed.
     """
 
     kind: type[R]
     noun: str  # "driver"
     head: Sequence[str]
     row: Callable[[R], Sequence[str]]
-    form: Callable[[R | None], Callable[[], R]]
+    form: Callable[[R | None, Kept], Callable[[], R]]
     right: Sequence[int] = ()
     key: str = ""  # tells two lists of one kind apart, such as the sessions of two rounds
 
@@ -45,15 +46,18 @@ def draw_records(ctx: Context, records: Sequence[R], shown: RecordList[R]) -> R 
         [ADD, *by_id],
         format_func=lambda id: by_id[id].name if id else f"Add a {shown.noun}",
         key=f"{key}_chosen",
+        persist_state="session",
     )
     record = by_id.get(chosen)
-    # A form that was kept is drawn afresh under a new number, so that the next one starts empty.
+    # Fields that were kept are drawn afresh under a new number, so that the next ones start empty, and those
+    # of a record that somebody else changed under its new content.
     times_kept = st.session_state.setdefault(f"{key}_times_kept", 0)
-    with st.form(f"{key}_{chosen}_{times_kept}", border=True):
-        build = shown.form(record)
+    kept_under = f"{key}_{chosen}_{times_kept}_{hash(record)}"
+    with st.container(border=True):
+        build = shown.form(record, Kept(kept_under))
         with st.container(horizontal=True, gap="small"):
-            keep = st.form_submit_button("Keep", type="primary")
-            remove = st.form_submit_button("Remove") if record else False
+            keep = st.button("Keep", type="primary", key=f"{kept_under} keep")
+            remove = st.button("Remove", key=f"{kept_under} remove") if record else False
     with plain_errors():
         if keep:
             kept = save(ctx.store, build(), by=ctx.who)
