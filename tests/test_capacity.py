@@ -68,6 +68,15 @@ def test_range_holds_the_middle_and_widens_with_elevation() -> None:
     assert aerobic_capacity_range_pct(8848.0)[0] >= 0.0
 
 
+def test_range_is_as_wide_as_people_differ() -> None:
+    """from memory: eight athletes lost 4.6 to 7.5 % per 1000 m above 300 m (Wehrlin & Hallen 2006); 95 of 100
+    people spread wider than eight, but not twice as wide (judgement)."""
+    low, high = aerobic_capacity_range_pct(2300.0)
+    most, least = 100.0 - 2.0 * 7.5, 100.0 - 2.0 * 4.6
+    assert low < most < least < high
+    assert high - low < 2.0 * (least - most)
+
+
 def test_scalar_equals_array_element_and_nan_passes() -> None:
     single = aerobic_capacity_pct(2300.0, 4.0)
     assert type(single) is float

@@ -130,7 +130,7 @@ RECORDS: dict[type, st.SearchStrategy[Any]] = {
         cabin_altitude_m=maybe(numbers(0, 3000)),
     ),
     PressureMeasurement: st.builds(
-        PressureMeasurement, place_ids, instants, numbers(300, 1100), text, id=st.just(0)
+        PressureMeasurement, place_ids, instants, numbers(960, 1060), text, id=st.just(0)
     ),
     SickPeriod: st.builds(
         lambda times, open_, **more: SickPeriod(

@@ -174,6 +174,24 @@ def test_what_contradicts_the_store_is_refused_not_dropped(team: Store) -> None:
         raise report.refused[0]
 
 
+def test_a_pressure_reduced_to_sea_level_is_refused(team: Store) -> None:
+    """computed: the low-latitude model gives 782.6 hPa at 2 250 m; 6 % either way is judgement."""
+    data = (
+        b"place,measured_at,pressure_hpa\n"
+        b"Plateau,2026-06-05 07:00,1013\nPlateau,2026-06-05 08:00,781\nPlateau,2026-06-05 09:00,5000\n"
+        b"Nowhere,2026-06-05 07:00,1013\n"
+    )
+    report = import_file(team, data, "pressures.csv", by="coach", now=NOW)
+    assert [record.pressure_hpa for record in report.records] == [781.0]
+    assert [(fault.line, fault.field) for fault in report.refused] == [
+        (2, "pressure_hpa"),
+        (4, "pressure_hpa"),
+        (5, "place"),
+    ]
+    with pytest.raises(InputError, match="expected 736 to 829 hPa at Plateau; a pressure reduced"):
+        raise report.refused[0]
+
+
 def test_two_lines_of_a_file_that_contradict_each_other(store: Store) -> None:
     data = (
         b"name,zone,elevation_m,latitude,longitude\n"

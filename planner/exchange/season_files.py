@@ -11,6 +11,7 @@ from planner.exchange.kinds import FileKind
 from planner.exchange.lines import Line
 from planner.exchange.tables import Cell, Column
 from planner.exchange.times import WANTED as A_TIME
+from planner.record_checks import found
 from planner.season.model import (
     Commitment,
     Driver,
@@ -21,6 +22,7 @@ from planner.season.model import (
     Session,
     Stay,
 )
+from planner.season.pressure import pressure_problem
 from planner.season.validation import ALTITUDE_HISTORIES, SESSION_KINDS, SEXES, TRAVEL_MODES, problems
 
 DRIVER: Final = Column("driver", "the name of a driver", required=True)
@@ -351,10 +353,13 @@ LEGS: Final = FileKind(
 
 def _take_pressure(line: Line, context: FileContext) -> PressureMeasurement:
     place_id, zone = place_in(line, context)
+    pressure_hpa = line.number("pressure_hpa")
+    if place_id:
+        line.note(found([pressure_problem(context.place[place_id], pressure_hpa)]))
     return PressureMeasurement(
         place_id=place_id,
         measured_at=line.measured_at("measured_at", zone),
-        pressure_hpa=line.number("pressure_hpa"),
+        pressure_hpa=pressure_hpa,
         typed=line.text("typed"),
     )
 
