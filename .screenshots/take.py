@@ -23,7 +23,7 @@ from playwright.sync_api import Browser, Page, sync_playwright
 from planner.ui.navigation import FIRST_PAGE
 
 HERE = Path(__file__).resolve().parent
-ON_A_LAPTOP = ("this_morning", "season", "driver")
+ON_A_LAPTOP = ("this_morning", "season", "arrival", "driver")
 ON_A_PHONE = ("this_morning", "readings", "fluids")
 LAPTOP, PHONE = (1280, 960), (390, 844)
 FLAGS = ["--no-sandbox", "--disable-gpu", "--no-first-run", "--disable-background-networking"]

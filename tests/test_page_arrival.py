@@ -240,6 +240,8 @@ def test_a_new_team_plans_its_first_round(store: Store, monkeypatch: pytest.Monk
         store.add(Session(given.id, kind, name, start, start.replace(hour=17)), by="coach")  # type: ignore[arg-type]
     at = opened(store, monkeypatch)
     assert "Nothing is planned for this round yet." in said(at)
+    look_at(at, "the usual plan")
+    assert "there on the day before, and home after the round" in said(at)
     sound(press(at, "Choose"))
     stays = [stay for stay in store.all(Stay) if stay.driver_id == driver.id]
     assert [stay.place_id for stay in stays] == [home.id, high.id, home.id]

@@ -33,6 +33,7 @@ ORDERS: Final[tuple[Order, ...]] = (
     "most SpO2 on race morning",
 )
 ORDER_SETTING: Final = "order of the ways to a round"
+NOT_PLANNED: Final = "Nothing is planned yet: there on the day before, and home after the round."
 # Where nothing lies high, that these are not to be had is no news.
 HIGH_GROUND_KINDS: Final[tuple[Kind, ...]] = ("half-way stop", "tent at home", "sleep lower")
 
@@ -103,6 +104,8 @@ def arrival(
     options = arrival_options(
         itinerary, point, fixed, setting, asked, lower_bed_m=lower_bed_m, not_before=not_before
     )
+    if gap.base != itinerary:
+        options = [replace(o, difference=NOT_PLANNED) if o.kind == "usual plan" else o for o in options]
     if not calendar.is_high(given):
         options = [o for o in options if o.itinerary is not None or o.kind not in HIGH_GROUND_KINDS]
     if not_before is not None:

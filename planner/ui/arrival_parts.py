@@ -22,6 +22,7 @@ from planner.services.arrival_choice import (
 from planner.ui.arrival_cached import Asked, chosen_before, days_chart_of, days_of, trade_off_of
 from planner.ui.arrival_words import (
     WAY_HEAD,
+    against_the_plan,
     choice_words,
     day_rows,
     given_rows,
@@ -85,7 +86,7 @@ def _draw_option(ctx: Context, found: Arrival, option: Option, way_key: str) -> 
     """What one way gives and costs, what stands against it, and its choice."""
     st.html(
         f'<div class="p-why"><span class="p-do">{escaped(_capital(titled(found, option)))}.</span> '
-        f"{escaped(option.difference)}</div>"
+        f"{escaped(against_the_plan(found, option))}</div>"
     )
     table(["", "gives and costs"], given_rows(option, ctx.units), right=(1,))
     draw_choice(ctx, found, option, way_key)

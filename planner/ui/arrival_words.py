@@ -53,7 +53,7 @@ def titled(found: Arrival, option: Option) -> str:
     arrives = "" if on is None else f", arriving {day(on)}"
     if is_planned(found, option):
         return f"as planned now{arrives}"
-    return f"a plain trip{arrives}, as nothing is planned yet"
+    return f"a plain trip{arrives}"
 
 
 def planned_words(found: Arrival) -> str:
@@ -70,6 +70,11 @@ def planned_words(found: Arrival) -> str:
         f"{per_cent(planned.outlook.race_spo2_pct.mean)} on race morning; number {place} of "
         f"{len(found.options)}."
     )
+
+
+def against_the_plan(found: Arrival, option: Option) -> str:
+    """What sets a way apart from what is planned; nothing to say of that itself."""
+    return "" if is_planned(found, option) else option.difference
 
 
 def round_words(found: Arrival) -> str:
@@ -121,7 +126,7 @@ def way_row(found: Arrival, rank: int, option: Option) -> list[str]:
     on = found.arrives_on(option)
     return [
         f"{rank}  {KIND_STYLES[option.kind].glyph} {titled(found, option)}",
-        option.difference,
+        against_the_plan(found, option),
         DASH if on is None else day(on),
         str(costs.nights_away),
         str(costs.flights),
