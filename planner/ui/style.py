@@ -14,7 +14,8 @@ _PAGE: Final = """
 .stApp [data-testid="stHtml"]{overflow-wrap:break-word;overflow-x:auto}
 .p-row,.p-answer,.p-line,.p-kept{overflow-wrap:anywhere}
 button[data-testid^="stBaseButton-primary"]:enabled,
-button[data-testid^="stBaseButton-primary"]:enabled *{color:var(--on-accent)}
+button[data-testid^="stBaseButton-primary"]:enabled *,
+.stApp [data-tag],.stApp [data-tag] *{color:var(--on-accent)}
 button[data-testid="stBaseButton-tertiary"],
 [data-testid="stPopover"] button[kind="tertiary"]{color:var(--accent)}
 [class*="st-key-p-card-"]{padding:.6rem .9rem .5rem;background:var(--surface);margin-bottom:-.4rem}
