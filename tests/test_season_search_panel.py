@@ -85,3 +85,8 @@ def test_rounds_that_are_there_already_are_told(at: AppTest, demo_store: Store) 
     assert not read.exception
     assert "0 rounds to take, 19 already there, 0 entries refused." in said(read)
     assert len(demo_store.all(Round)) == rounds
+
+
+def test_the_iron_check_is_due_before_the_next_round_that_asks_for_it(at: AppTest) -> None:
+    # From memory: four to six weeks ahead; the first session at Sumaqara is on 7 August.
+    assert "Iron of Bastien Corvelle is to be looked at from Fri 26 Jun to Fri 10 Jul" in said(at)

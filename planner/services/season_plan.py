@@ -10,7 +10,7 @@ from typing import Final
 import numpy as np
 
 from planner.errors import InputError, StoreError
-from planner.season.constraints import Limits, local_date
+from planner.season.constraints import IronCheck, Limits, iron_check, local_date
 from planner.season.day_model import Combination, Measure, Rates
 from planner.season.day_problem import DaySeason, day_season
 from planner.season.evaluate import Costs, RoundOutlook, RoundPoint, Setting, costs, outlooks, round_point
@@ -173,6 +173,13 @@ def free_places(calendar: Calendar, driver: Driver) -> list[Place]:
 def high_rounds_ahead(calendar: Calendar, at: datetime) -> list[Round]:
     """The high rounds of this season that have not begun."""
     return [r for r in calendar.season_at(at) if calendar.is_high(r) and calendar.starts_at(r) > at]
+
+
+def iron_due(calendar: Calendar, driver: Driver, at: datetime) -> IronCheck | None:
+    """When the driver's iron is to be looked at before the next round that asks the blood for it, if any."""
+    ahead = high_rounds_ahead(calendar, at)
+    sessions = [session for each in ahead for session in calendar.sessions[each.id]]
+    return iron_check(driver, fixed_points(ahead, sessions, (), driver_id=driver.id), calendar.places)
 
 
 def season_task(store: Store, driver: Driver, question: Question) -> SeasonTask:

@@ -10,6 +10,7 @@ import streamlit as st
 
 from planner.charts.season_plan import PICKED, season_trade_off_chart
 from planner.errors import PlannerError
+from planner.season.constraints import IronCheck
 from planner.season.model import Driver
 from planner.services.season import Calendar
 from planner.services.season_plan import (
@@ -17,6 +18,7 @@ from planner.services.season_plan import (
     Question,
     SeasonPlans,
     high_rounds_ahead,
+    iron_due,
     keep_plan,
     search_season,
 )
@@ -25,7 +27,7 @@ from planner.ui.page import Context, line, note_for_next_run
 from planner.ui.season_question import ask
 from planner.ui.tables import note, table
 from planner.ui.text import literal
-from planner.wording import DASH, NO_BREAK, counted, number, per_cent, per_cent_range
+from planner.wording import DASH, NO_BREAK, counted, day, number, per_cent, per_cent_range
 
 MOST_LISTED: Final = 10
 _FOUND: Final = "plans of the season"
@@ -44,6 +46,9 @@ class _Found:
 
 def draw_season_search(ctx: Context, calendar: Calendar, driver: Driver) -> None:
     """Ask, search, compare, keep; nothing is written before a plan is made the itinerary."""
+    due = iron_due(calendar, driver, ctx.now)
+    if due is not None:
+        line(iron_words(driver, due))
     shown = st.toggle(
         f"What could the free days buy {literal(driver.name)}?",
         key="season_search_shown",
@@ -63,6 +68,16 @@ def draw_season_search(ctx: Context, calendar: Calendar, driver: Driver) -> None
         if st.button("Search", type="primary", key="season_search_go"):
             _search(ctx, driver, question)
         _draw_found(ctx, driver, question)
+
+
+def iron_words(driver: Driver, due: IronCheck) -> str:
+    """When iron is to be looked at, in one sentence; what follows from it is the physician's."""
+    if due.done_on is not None:
+        return f"Iron of {driver.name} was looked at on {day(due.done_on)}, in time for {due.round_name}."
+    return (
+        f"Iron of {driver.name} is to be looked at from {day(due.due_from)} to {day(due.due_by)}, four to six"
+        f" weeks before {due.round_name} (from memory); what follows is the physician's."
+    )
 
 
 def _search(ctx: Context, driver: Driver, question: Question) -> None:
