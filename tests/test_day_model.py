@@ -28,9 +28,10 @@ from planner.errors import InputError
 from planner.season import stretch
 from planner.season.constraints import Limits
 from planner.season.day_model import DayProblem, evaluate_plans
-from planner.season.day_problem import DaySeason, day_season
+from planner.season.day_problem import DaySeason, day_season, race_values
 from planner.season.evaluate import outlooks
 from planner.season.itinerary import broken, problems
+from planner.season.model import Place
 from planner.season.nights import nights_of
 from planner.season.obstacles import in_the_way
 from planner.season.search import TradeOff, search
@@ -181,3 +182,11 @@ def test_a_search_that_begins_on_the_way_says_so() -> None:
 
 def vars_of(problem: DayProblem) -> dict[str, object]:
     return {name: getattr(problem, name) for name in DayProblem.__dataclass_fields__}
+
+
+@pytest.mark.parametrize("place", [HOME, HALF, MESA, PUNA], ids=lambda p: p.name)
+def test_the_drivers_values_rise_with_the_state(place: Place) -> None:
+    # Step 2 of the proof in planner.season.search, for the mean over people that the search works with.
+    spo2, capacity = race_values(place, None)(np.linspace(0.0, 0.7, 701))
+    assert (np.diff(spo2) >= -1e-12).all()
+    assert (np.diff(capacity) >= -1e-12).all()

@@ -7,8 +7,11 @@ import pytest
 from season_problems import all_plans, random_season, value_at
 
 from planner.checks import FloatArray
+from planner.physiology.population import POPULATION
+from planner.season import stretch
 from planner.season.day_model import DayProblem, evaluate_plans
-from planner.season.search import SearchCancelledError, count_plans, search, undominated
+from planner.season.dominance import undominated
+from planner.season.search import SearchCancelledError, count_plans, search
 
 SEASONS = 200
 
@@ -108,3 +111,19 @@ def test_progress_and_cancel() -> None:
     assert told[-1] == 1.0
     with pytest.raises(SearchCancelledError, match="nothing has been changed"):
         search(problem, cancelled=lambda: len(told) > 2)
+
+
+def test_ways_judged_by_two_samples_give_the_same_curves(monkeypatch: pytest.MonkeyPatch) -> None:
+    # With two samples nearly every comparison of ways rests on convexity.
+    seasons = [random_season(seed) for seed in range(0, SEASONS, 4)]
+    expected = [search(problem) for problem in seasons]
+    monkeypatch.setattr(stretch, "SAMPLES", 2)
+    for problem, curve in zip(seasons, expected, strict=True):
+        again = search(problem)
+        assert again.cost == pytest.approx(curve.cost)
+        assert again.benefit == pytest.approx(curve.benefit, abs=1e-9)
+
+
+def test_states_fall_more_slowly_than_they_rise() -> None:
+    # What the convexity of a step rests on, see planner.season.moves.
+    assert POPULATION.fall_time_d > POPULATION.rise_time_d
