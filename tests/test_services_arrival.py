@@ -33,6 +33,7 @@ from planner.services.arrival_choice import (
     undo,
 )
 from planner.services.arrival_days import plan_days
+from planner.services.calendars import driver_calendar
 from planner.services.driver import driver_view
 from planner.services.limits import season_limits
 from planner.services.morning import DriverRow, morning
@@ -460,6 +461,9 @@ def test_above_3000_m_the_rule_holds_unless_a_reason_is_kept(high_store: Store) 
     assert made.ascent_reason == reason
     assert ascent_reason_kept(high_store, calendar, found.driver, given) == reason
     assert high_store.change_sets(1)[0].why.endswith(f"ascent rule set aside: {reason}")
+    # The file that the driver is sent says it too; its long lines are folded.
+    sent = driver_calendar(high_store, found.driver).decode().replace("\r\n ", "").replace("\\,", ",")
+    assert f"ascent rule above 3 000 m set aside: {reason}" in sent
     undo(high_store, made, by="coach")
     assert ascent_reason_kept(high_store, read_calendar(high_store), found.driver, given) == ""
 
@@ -517,3 +521,20 @@ def test_rounds_outside_of_what_is_planned_can_be_reached_too(demo_store: Store,
         there = after.entries[after.index_at(calendar.starts_at(given)) or 0]
         assert isinstance(there, Stay)
         assert there.place_id == given.place_id
+
+
+def test_stays_without_legs_have_days_without_light(demo_store: Store) -> None:
+    """As a file of stays alone leaves it: nothing is known to have moved the body clock."""
+    home = next(p for p in demo_store.all(Place) if p.name == "Vessaly")
+    driver = demo_store.add(Driver("Nova Nobody", "woman", home.id, 60.0, 168.0), by="coach")
+    given = next(r for r in demo_store.all(Round) if r.name == "Wenchara Round")
+    start = read_calendar(demo_store).starts_at(given)
+    demo_store.add(
+        Stay(driver.id, given.place_id, start - timedelta(days=9), start + timedelta(days=4)), by="coach"
+    )
+    found = arrival(demo_store, driver, given)
+    [planned] = [o for o in found.options if is_planned(found, o)]
+    days = plan_days(found, planned)
+    assert len(days) > 9
+    assert [d.light for d in days] == [None] * len(days)
+    assert all(d.expected is not None for d in days)

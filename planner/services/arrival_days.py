@@ -109,7 +109,8 @@ def _light(found: Arrival, itinerary: Itinerary) -> dict[date, LightDay]:
     course = clock_course(itinerary, places)
     leaves = [leg.depart_at for leg in itinerary.legs[1:]] + [found.point.race_morning]
     windows: dict[date, LightDay] = {}
-    for i, leave_at in enumerate(leaves):
+    # Stays that came in without their legs have no course: nothing is known to have moved the clock.
+    for i, leave_at in enumerate(leaves[: len(course)]):
         until = min(leave_at, found.point.race_morning)
         if found.gap.free_from - ONE_DAY <= until and course[i].arrived_at <= until:
             windows.update({each.day: each for each in light_days(driver, course[: i + 1], until, places)})

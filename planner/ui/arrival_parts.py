@@ -182,8 +182,8 @@ def draw_days(ctx: Context, asked: Asked, found: Arrival, option: Option) -> Non
     )
     note(
         "Times are local where they are lived. Light moves the body clock only until it is adapted; seek "
-        "bright light in the first window, keep out of it in the second (from the timing of the body's "
-        "temperature minimum, taken from the usual time of waking)."
+        "bright light in the first window, keep out of it in the second (set by the body's temperature "
+        "minimum, taken from the usual time of waking; under 3 zones the published windows are carried on)."
     )
 
 
