@@ -105,7 +105,9 @@ def gap_before(
         free_from = _next_at(bound.ends_at, EARLIEST_DEPARTURE, venue)
         # The plan may already leave on the evening before; what is planned can be kept.
         start = base.index_at(bound.ends_at - timedelta(minutes=1))
-        if start is not None and base.entries[start].depart_at <= free_from:
+        if start is None:
+            free_from, start = _at_a_place(base, free_from)
+        elif base.entries[start].depart_at <= free_from:
             free_from = max(bound.ends_at, base.entries[start].depart_at)
     if not_before is not None and not_before > free_from:
         free_from, start = _at_a_place(base, not_before)
@@ -157,12 +159,11 @@ def _covering(
 
 
 def _at_a_place(itinerary: Itinerary, at: datetime) -> tuple[datetime, int | None]:
-    """The first instant from then on at which the driver is not travelling, and the entry that holds it."""
-    i = itinerary.index_at(at)
-    while i is not None and not isinstance(itinerary.entries[i], Stay):
-        at = ends_at(itinerary.entries[i])
-        i = itinerary.index_at(at)
-    return at, i
+    """The first instant from then on at which the driver is known to be at a place, and that entry."""
+    for i, entry in enumerate(itinerary.entries):
+        if isinstance(entry, Stay) and entry.depart_at > at:
+            return max(at, entry.arrive_at), i
+    return at, None
 
 
 def sketches(gap: Gap, point: RoundPoint, setting: Setting, lower_bed_m: float | None) -> Iterator[Sketch]:
