@@ -7,8 +7,6 @@ from typing import Any
 import streamlit as st
 
 from planner.charts.driver import PICKED
-from planner.monitoring.own_range import own_range_in_words
-from planner.services.course import POSSESSIVES
 from planner.services.driver import DriverView, Window
 from planner.ui.cached import calendar_of
 from planner.ui.driver_cached import chart_of, driver_view_of, explanation_of, reading_choices
@@ -44,7 +42,7 @@ def main() -> None:
 
 def show_driver(ctx: Context, view: DriverView) -> None:
     """Draw the sentence, the chart, and what explains it."""
-    words = own_range_in_words(view.person, POSSESSIVES[view.driver.sex])
+    words = view.range_in_words
     answer(f"{view.driver.name}: {words[0].lower() if words.startswith('No ') else words[0]}{words[1:]}")
     line(where_and_last(ctx, view))
     window = st.segmented_control(

@@ -7,20 +7,17 @@ from datetime import datetime, timedelta
 import streamlit as st
 
 from planner.charts.season import season_chart
-from planner.season.constraints import HIGH_FROM_M
-from planner.season.evaluate import Spread
 from planner.season.model import Driver, Leg, Stay
 from planner.services.season import (
     Calendar,
-    RoundCost,
     Whereabouts,
     whereabouts,
 )
 from planner.ui.cached import calendar_of
 from planner.ui.calendar_files import draw_calendar_files
-from planner.ui.driver_cached import costs_of
 from planner.ui.frames import frame
 from planner.ui.page import Context, answer, end_page, line, start_page
+from planner.ui.season_rounds import draw_high_rounds
 from planner.ui.season_search import draw_season_search
 from planner.ui.tables import note, table
 from planner.units import from_house
@@ -30,8 +27,6 @@ from planner.wording import (
     day,
     day_and_clock,
     elevation,
-    per_cent,
-    per_cent_range,
 )
 
 MARGIN = timedelta(days=30)  # drawn before the first round and after the last
@@ -64,7 +59,7 @@ def show_season(ctx: Context, calendar: Calendar) -> None:
         driver = drivers[chosen]
     show_landscape(ctx, calendar, driver)
     if driver is not None:
-        show_high_rounds(ctx, driver)
+        draw_high_rounds(ctx, driver)
         draw_season_search(ctx, calendar, driver)
     show_whereabouts(ctx, calendar)
     draw_calendar_files(ctx, driver)
@@ -141,60 +136,6 @@ def course_of(calendar: Calendar, driver: Driver | None) -> list[tuple[datetime,
         bed_m = place.bed_elevation_m if stay.bed_elevation_m is None else stay.bed_elevation_m
         points += [(stay.arrive_at, bed_m, place.name), (stay.depart_at, bed_m, place.name)]
     return points
-
-
-def show_high_rounds(ctx: Context, driver: Driver) -> None:
-    """Draw what the present plan gives this driver at the high rounds."""
-    costs = costs_of(ctx, driver)
-    if not costs:
-        return
-    table(
-        [
-            "high round",
-            "first session",
-            "track",
-            "free days before",
-            "nights there",
-            "SpO2 first session",
-            "SpO2 race morning",
-            "aerobic capacity",
-        ],
-        [cost_row(ctx, each) for each in costs],
-        right=(2, 4, 5, 6, 7),
-        caption=f"What the present plan gives {driver.name} at the high rounds",
-        stack=True,
-    )
-    unplanned = [each.round.name for each in costs if each.outlook is None]
-    if unplanned:
-        line(f"A dash: no stay is planned there yet ({', '.join(unplanned)}).")
-    note(
-        "SpO2 awake at rest: the driver's own range, which holds 95 % of single readings. Free days lie "
-        "between the last fixed thing before (a round or a commitment) and the first session; nights there "
-        "are those before it. "
-        "Aerobic capacity on race morning is per cent of one's own at sea level and no measure of lap time. "
-        f"A round is called high from {elevation(HIGH_FROM_M, ctx.units)} (judgement)."
-    )
-
-
-def cost_row(ctx: Context, cost: RoundCost) -> list[str]:
-    """One high round in words."""
-    free = DASH if cost.free_days_before is None else str(cost.free_days_before)
-    given = cost.outlook
-    return [
-        cost.round.name,
-        day(cost.first_session.starts_at, cost.place.zone),
-        elevation(cost.place.track_elevation_m, ctx.units),
-        f"{free} after {cost.free_since}",
-        DASH if given is None else str(cost.nights_there),
-        DASH if given is None else in_words(given.first_session_spo2_pct),
-        DASH if given is None else in_words(given.race_spo2_pct),
-        DASH if given is None else per_cent(given.race_capacity_pct.mean),
-    ]
-
-
-def in_words(found: Spread) -> str:
-    """A 95 % range in whole per cent."""
-    return per_cent_range(found.low, found.high)
 
 
 def show_whereabouts(ctx: Context, calendar: Calendar) -> None:

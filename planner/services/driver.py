@@ -13,11 +13,11 @@ from zoneinfo import ZoneInfo
 
 from planner.monitoring.model import Reading
 from planner.monitoring.outcome import CONFIRMS_WITHIN, SIGNS_LAST, ExpectedRange, Judgement, Sample
-from planner.monitoring.own_range import why_it_teaches_nothing
+from planner.monitoring.own_range import own_range_in_words, why_it_teaches_nothing
 from planner.physiology.expectation import Expectation, expected_spo2
 from planner.physiology.person import PersonPosterior
 from planner.season.model import Driver
-from planner.services.course import ONE_HOUR, DriverCourse
+from planner.services.course import ONE_HOUR, POSSESSIVES, DriverCourse
 from planner.services.morning import CLOCKS_DIFFER, judged
 from planner.services.own import Past, person_before
 from planner.services.season import Calendar, RoundCost, round_costs
@@ -91,6 +91,11 @@ class DriverView:
         """What all readings so far have taught."""
         course = self.population
         return person_before(self.driver.id, self.past, self.now, course.history, course.origin)
+
+    @property
+    def range_in_words(self) -> str:
+        """How much of the range is the driver's own, in one sentence."""
+        return own_range_in_words(self.person, POSSESSIVES[self.driver.sex])
 
     @cached_property
     def expected_now(self) -> ExpectedRange:
