@@ -12,6 +12,7 @@ from planner.ui.reading_corrections import draw_corrections
 from planner.ui.reading_entry import draw_entry
 from planner.wording import counted
 
+MOST_NAMED = 8  # of those who wait; more would push the fields off a phone's screen
 PARTS = {"Type": draw_entry, "Import": draw_reading_import, "Correct": draw_corrections}
 
 
@@ -23,7 +24,8 @@ def say_where_we_are(ctx: Context) -> bool:
         return False
     waiting = [row.driver for row in rows if row.outcome == "not measured"]
     answer(f"{len(rows) - len(waiting)} of {counted(len(rows), 'driver')} measured today.")
-    line(f"Not yet: {', '.join(waiting)}." if waiting else "Everybody is measured.")
+    more = f" and {len(waiting) - MOST_NAMED} more" if len(waiting) > MOST_NAMED else ""
+    line(f"Not yet: {', '.join(waiting[:MOST_NAMED])}{more}." if waiting else "Everybody is measured.")
     return True
 
 

@@ -6,6 +6,7 @@ import streamlit as st
 
 from planner.ui.errors import plain_errors
 from planner.ui.navigation import FIRST_PAGE, PAGES, pages_folder
+from planner.ui.page import end_whatever_happened
 
 
 def main() -> None:
@@ -25,6 +26,7 @@ def main() -> None:
     page = st.navigation(pages, position="top")
     with plain_errors():
         page.run()
+    end_whatever_happened()
 
 
 main()

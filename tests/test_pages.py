@@ -11,7 +11,7 @@ from screens import PAGES, ROOT, first_line, html_of, open_page, press, said
 from streamlit.testing.v1 import AppTest
 
 from planner.physiology.illness import EMERGENCY_SIGNS
-from planner.season.model import Driver
+from planner.season.model import Driver, Leg
 from planner.services.workspace import (
     FROZEN_CLOCK,
     choose_units,
@@ -75,7 +75,7 @@ def test_under_every_screen_stand_the_cautions(
 ) -> None:
     at = opened(stem, demo_store, monkeypatch)
     text = said(at)
-    assert WHO_DECIDES in text
+    assert text.count(WHO_DECIDES) == 1
     assert "No diagnosis and no clearance to drive." in text
     # At the head behind one button, and again at the foot.
     for words in EMERGENCY_SIGNS.values():
@@ -109,6 +109,16 @@ def test_stored_text_is_shown_as_typed(demo_store: Store, monkeypatch: pytest.Mo
     assert not any(option.startswith("<") for option in driver_pills.options)
 
 
+@pytest.mark.parametrize("stem", PAGES)
+def test_stays_without_their_legs_break_no_page(
+    stem: str, demo_store: Store, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with demo_store.transaction("coach"):
+        for leg in demo_store.all(Leg):
+            demo_store.remove(leg, by="coach")
+    opened(stem, demo_store, monkeypatch)
+
+
 def test_a_spread_team_is_told_with_places_and_times(
     demo_store: Store, monkeypatch: pytest.MonkeyPatch
 ) -> None:
@@ -127,6 +137,7 @@ def test_a_fault_is_one_plain_line(demo_store: Store, monkeypatch: pytest.Monkey
     assert "fault in the program" in error.value
     assert "Traceback" not in error.value
     assert "\n" not in error.value
+    assert said(at).count(WHO_DECIDES) == 1
 
 
 def test_a_store_that_cannot_be_opened_is_one_plain_line(

@@ -25,6 +25,7 @@ from planner.wording import UnitChoice, day, unit_name
 
 _WHO: Final = "who"
 _NOTE: Final = "note for the next run"
+_ENDED: Final = "page has drawn its end"
 
 
 @dataclass(frozen=True)
@@ -41,6 +42,7 @@ class Context:
 def start_page(title: str) -> Context:
     """Begin a page. Without drivers it offers the demo season or an own team, until one is chosen."""
     st.html(style_sheet())
+    st.session_state[_ENDED] = False
     store = open_store()
     who = str(st.session_state.get(_WHO) or workspace.last_name(store))
     context = Context(
@@ -66,7 +68,14 @@ def end_page(context: Context) -> None:
             '<div class="p-small">Demo season: its people, teams, places and readings are invented. '
             f"Its clock stands still on {escaped(day(context.now))}.</div>"
         )
+    st.session_state[_ENDED] = True
     footer()
+
+
+def end_whatever_happened() -> None:
+    """Draw the cautions under a page that a fault kept from its end."""
+    if not st.session_state.get(_ENDED):
+        footer()
 
 
 def answer(sentence: str) -> None:

@@ -7,11 +7,14 @@ import re
 from typing import Final
 
 _MARKDOWN: Final = re.compile(r"([\\`*_{}\[\]()<>#+\-.!|~$:&@/])")
+# Addresses become links although every sign of them is escaped; a sign without width keeps them apart.
+_ADDRESS: Final = re.compile(r"(?<=:)(?=//)|(?<=www)(?=\.)|(?<=@)", re.IGNORECASE)
+_WORD_JOINER: Final = "\u2060"
 
 
 def literal(text: str) -> str:
     """Text for a Markdown element, with everything escaped that Markdown would act on."""
-    return _MARKDOWN.sub(r"\\\1", " ".join(text.split()))
+    return _MARKDOWN.sub(r"\\\1", _ADDRESS.sub(_WORD_JOINER, " ".join(text.split())))
 
 
 def escaped(text: str) -> str:
