@@ -47,6 +47,16 @@ def test_higher_and_longer_does_more() -> None:
     assert np.all(np.diff(by_day) < 0.0)
 
 
+def test_plasma_volume_begins_to_fall_at_1000_m() -> None:
+    """judgement: nothing below 1000 m, half-way to 2500 m half of the published 6 % of a day there."""
+    at_1000, at_1750, at_2500 = (
+        plasma_volume_change_pct(straight_to(e), 24.0) for e in (1000.0, 1750.0, 2500.0)
+    )
+    assert at_1000 == pytest.approx(0.0)
+    assert at_1750 == pytest.approx(-3.0, abs=0.05)
+    assert at_2500 == pytest.approx(-6.0, abs=0.05)
+
+
 def test_tent_nights_count_by_their_hours() -> None:
     sea, inside = inspired_at(0.0), float(inspired_po2_mmhg(1013.25, 0.15))
     tent = ExposureHistory(np.array([LONG_AGO_H, 0.0, 9.0]), np.array([sea, inside, sea]))

@@ -37,6 +37,13 @@ def test_figures_held_back_from_the_fit(row: Row) -> None:
     row.check(expected.mean_spo2_pct)
 
 
+@pytest.mark.parametrize("hours", [0.0, 3.0, 12.0, 20.0])
+def test_the_chambers_fall_also_for_somebody_straight_from_the_sea(hours: float) -> None:
+    """published: 4.4 points, 95 % interval 3.9-4.9, 198 to 2438 m, 3-20 h (Muhm 2007, NEJM 357:18)."""
+    low, high = (expected_spo2(straight_to(e), hours).mean_spo2_pct for e in (198.0, 2438.0))
+    assert 3.9 <= low - high <= 4.9
+
+
 @pytest.mark.parametrize("wakefulness", ["awake", "asleep"])
 @EXAMPLES
 @given(elevation=ELEVATIONS, higher=st.floats(1.0, 500.0), days=DAYS)

@@ -79,6 +79,9 @@ def test_sickness_is_left_out_and_counted_again_when_taken_back() -> None:
     assert same(learn(FORTNIGHT, ILL), learn(well))
     still_ill = replace(ILL, ends_at=None)
     assert learn(FORTNIGHT, still_ill).readings == 3
+    for period in (ILL, still_ill):
+        taught_by = [r for r in FORTNIGHT if not why_it_teaches_nothing(r, [period])]
+        assert len(taught_by) == learn(FORTNIGHT, period).readings
     assert same(learn(FORTNIGHT), learn(list(FORTNIGHT)))
 
 
