@@ -12,9 +12,10 @@ from planner.ui.cached import calendar_of
 from planner.ui.driver_cached import chart_of, driver_view_of, explanation_of, reading_choices
 from planner.ui.driver_parts import draw_explanation, draw_legend, draw_model, draw_next_round, draw_taught
 from planner.ui.fluids_driver import draw_driver_fluids
+from planner.ui.morning_rows import whereabout_words
 from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, answer, end_page, line, start_page
-from planner.wording import day_and_clock, elevation, per_cent, per_cent_range
+from planner.wording import day_and_clock, per_cent, per_cent_range, zone_name
 
 WINDOWS: tuple[Window, ...] = ("12 weeks", "season", "all")
 
@@ -73,13 +74,14 @@ def where_and_last(ctx: Context, view: DriverView) -> str:
     """Where the driver is, what is expected there now, and the last reading."""
     where = view.population.where(view.now)
     now = view.expected_now
-    there = f"{where.place.name}, {elevation(where.bed_elevation_m, ctx.units)}"
-    text = f"{'On the way to' if where.on_the_way else 'At'} {there}: "
-    text += f"expect {per_cent_range(now.low_pct, now.high_pct)} {now.words}."
+    there = whereabout_words(where, ctx.units)
+    expected = f"expect {per_cent_range(now.low_pct, now.high_pct)} {now.words}"
+    text = f"{there[0].upper()}{there[1:]}: {expected}."
     last = view.last_mark
     if last is None:
         return f"{text} No reading yet."
-    when = day_and_clock(last.reading.taken_at, where.place.zone)
+    taken_at, place = last.reading.taken_at, view.calendar.places[last.reading.place_id]
+    when = f"{day_and_clock(taken_at, place.zone)} {zone_name(place.zone, taken_at)}"
     return f"{text} Last reading {per_cent(last.reading.spo2_pct)}, {when}: {last.judgement.outcome}."
 
 

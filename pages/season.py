@@ -77,9 +77,11 @@ def headline(ctx: Context, calendar: Calendar) -> str:
         return f"{text} The high ones are over."
     place = calendar.place_of(coming[0])
     begun = calendar.starts_at(coming[0]) <= ctx.now
-    when = "now" if begun else f"from {day(calendar.starts_at(coming[0]), place.zone)}"
+    when = f"from {day(calendar.starts_at(coming[0]), place.zone)}"
     high_up = elevation(place.track_elevation_m, ctx.units)
-    return f"{text} {'On' if begun else 'Next'}: {coming[0].name} at {high_up}, {when}."
+    if begun:
+        return f"{text} On now: {coming[0].name} at {high_up}."
+    return f"{text} Next: {coming[0].name} at {high_up}, {when}."
 
 
 def show_landscape(ctx: Context, calendar: Calendar, driver: Driver | None) -> None:
@@ -144,7 +146,7 @@ def show_whereabouts(ctx: Context, calendar: Calendar) -> None:
         line("No drivers yet. Add them on Team.")
         return
     table(
-        ["driver", "where", "sleeps at", "nights there", "goes next"],
+        ["driver", "where", "sleeps at", "nights there", "goes next, local time"],
         [whereabouts_row(ctx, calendar, each) for each in whereabouts(calendar, ctx.now)],
         right=(2, 3),
         caption=f"Where everybody is on {day(ctx.now)}",

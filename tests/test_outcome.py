@@ -128,7 +128,7 @@ def test_the_worst_reason_comes_first() -> None:
 
 def test_a_low_reading_is_told_with_the_one_that_it_confirms() -> None:
     assert spoken(judge(sample(LOW), [sample(87.0, 10 * MINUTE)])) == [
-        "88 %, expected 90–96 % for her on day 2: below it again after 87 % 10 min before."
+        "88 %, expected 90–96 % for her on day 2: below it again (87 % 10 min before)."
     ]
 
 

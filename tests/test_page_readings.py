@@ -78,7 +78,7 @@ def test_a_low_reading_is_shown_back_with_what_to_do(demo_store: Store) -> None:
     assert "Measure again: seated and quiet" in text
     again = typed(press(at, "Measure again"), "80")
     assert "■ urgent" in said(again)
-    assert "below it again after 80 % just before, and far below" in said(again)
+    assert "below it again (80 % just before), and far below" in said(again)
 
 
 def test_the_last_reading_can_be_taken_back(demo_store: Store) -> None:

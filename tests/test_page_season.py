@@ -24,7 +24,7 @@ def test_the_demo_shows_the_high_rounds_and_where_everybody_is(
     monkeypatch.setenv("PLANNER_STORE", str(demo_store.path))
     at = open_page("season")
     assert not at.exception
-    assert first_line(at).startswith("19 rounds, 5 of them high. On: Talquime Round")
+    assert first_line(at).startswith("19 rounds, 5 of them high. On now: Talquime Round")
     shown = said(at)
     assert "What the present plan gives Bastien Corvelle" in shown
     assert "Sumaqara Round" in shown

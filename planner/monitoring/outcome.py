@@ -175,7 +175,10 @@ def _saturation(sample: Sample, before: Sequence[Sample]) -> list[Finding]:
         return [_low(sample, before)]
     if reading.spo2_pct > sample.expected.high_pct:
         return [
-            Finding("repeat", f"{measured}: above it. Check the sensor; exhaust gas makes it read too high.")
+            Finding(
+                "repeat",
+                f"{measured}: above it. Check the sensor; carbon monoxide (exhaust) makes it read too high.",
+            )
         ]
     return [Finding("in range", f"{measured}.")]
 
@@ -185,7 +188,8 @@ def _low(sample: Sample, before: Sequence[Sample]) -> Finding:
     first = _confirming(sample, before)
     if first is None:
         return Finding("repeat", f"{measured}: below it, once so far.")
-    twice = f"{measured}: below it again after {per_cent(first.reading.spo2_pct)}{_when(first, sample)}"
+    before = f"{per_cent(first.reading.spo2_pct)}{_when(first, sample)}"
+    twice = f"{measured}: below it again ({before})"
     if is_far_below(sample):
         return Finding("urgent", f"{twice}, and far below.")
     if _is_worse(sample.reading, first.reading):

@@ -29,7 +29,7 @@ from planner.ui.navigation import driver_handed_on
 from planner.ui.page import Context, note_for_next_run
 from planner.ui.reading_draft import Draft
 from planner.ui.text import escaped
-from planner.wording import unit_name
+from planner.wording import clock, unit_name, zone_name
 
 AT_REST: Final = "At rest"
 WARM_HAND: Final = "Warm hand"
@@ -158,8 +158,9 @@ def _quick(
 
 def _say_where(ctx: Context, row: DriverRow) -> None:
     """Where a reading will count as taken, unless another place is chosen."""
-    words = whereabout_words(row.where, ctx.units)
-    st.html(f'<div class="p-small">Counts as taken {escaped(words)}.</div>')
+    now = f"{clock(ctx.now, row.zone)} {zone_name(row.zone, ctx.now)}"
+    words = f"Counts as taken {whereabout_words(row.where, ctx.units)}. There it is {now}."
+    st.html(f'<div class="p-small">{escaped(words)}</div>')
 
 
 def _symptoms(draft: Draft) -> tuple[dict[str, int | None], list[str]]:

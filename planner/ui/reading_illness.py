@@ -70,5 +70,5 @@ def _end(ctx: Context, row: DriverRow, period: SickPeriod) -> None:
             st.rerun()
         if st.button("Marked by mistake"):
             ctx.store.remove(period, by=ctx.who, why="marked by mistake")
-            note_for_next_run(f"{row.driver} was never ill: the mark is taken back.")
+            note_for_next_run(f"The mark that {row.driver} is ill was taken back.")
             st.rerun()
