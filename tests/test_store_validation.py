@@ -313,7 +313,7 @@ def test_names_are_there_once(store: Store) -> None:
         store.change(replace(high, name=home.name), by=BY)
     with pytest.raises(InputError, match=r"^name: 'Ada Invented' .* a driver that"):
         store.add(replace(DRIVER, home_place_id=home.id), by=BY)
-    twice = [Round(1, "Same", home.id), Round(2, "Same", home.id)]
+    twice = [Round(3, "Other", home.id), Round(1, "Same", home.id), Round(2, "Same", home.id)]
     with pytest.raises(InputError, match=r"^name: 'Same' .* a round that is not there already"):
         store.add_all(twice, by=BY)
     assert store.all(Round) == []
