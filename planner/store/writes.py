@@ -84,7 +84,9 @@ class OpenChangeSet:
         try:
             insert_columns(self.connection, kind, ids, columns)
         except IntegrityError as error:
-            raise self._why_refused(kind, map(vars, records), error) from error
+            # The rows before the refused one are in the table by now: they are none that were there already.
+            others = kind.table.c.id <= highest
+            raise self._why_refused(kind, map(vars, records), error, others) from error
         self._log_where(kind, "add", kind.table.c.id > highest, why)
         return [record_from(record, (*row, id)) for row, id in zip(rows, ids, strict=True)]
 
@@ -108,7 +110,7 @@ class OpenChangeSet:
         try:
             self.connection.execute(update(kind.table).where(kind.table.c.id == record_id).values(**after))
         except IntegrityError as error:
-            raise self._why_refused(kind, [after], error, except_id=record_id) from error
+            raise self._why_refused(kind, [after], error, kind.table.c.id != record_id) from error
 
     def _log_change(self, kind: Kind, record_id: int, before: Mapping[str, Any], why: str) -> None:
         self.connection.execute(
@@ -202,7 +204,7 @@ class OpenChangeSet:
                 self.connection.execute(update(kind.table).where(chosen).values(removed_in=removed_in))
             except IntegrityError as error:
                 rows = [state.values for state in self._states(kind, some).values()]
-                raise self._why_refused(kind, rows, error) from error
+                raise self._why_refused(kind, rows, error, kind.table.c.id.not_in(some)) from error
             self._log_where(kind, action, chosen, why)
 
     # Undoing ------------------------------------------------------------------------------------------------
@@ -318,9 +320,9 @@ class OpenChangeSet:
                 raise InputError(field, min(missing), f"the id of a stored {parent.words}")
 
     def _why_refused(
-        self, kind: Kind, rows: Iterable[Mapping[str, Any]], error: IntegrityError, except_id: int = 0
+        self, kind: Kind, rows: Iterable[Mapping[str, Any]], error: IntegrityError, others: Any
     ) -> Exception:
-        """Which record is there already; looked for only after the database refused."""
+        """Which record is there already, among `others`; looked for only after the database refused."""
         unique = schema.UNIQUE.get(kind.record, ())
         seen: set[tuple[object, ...]] = set()
         for row in rows if unique else ():
@@ -329,7 +331,7 @@ class OpenChangeSet:
                 select(kind.table.c.id).where(
                     *(kind.table.c[field] == row[field] for field in unique),
                     kind.table.c.removed_in.is_(None),
-                    kind.table.c.id != except_id,
+                    others,
                 )
             ).first()
             if there is not None or key in seen:
