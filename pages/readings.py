@@ -7,6 +7,7 @@ import streamlit as st
 from planner.ui.cached import morning_of
 from planner.ui.errors import plain_errors
 from planner.ui.file_import import draw_reading_import
+from planner.ui.navigation import lead_to
 from planner.ui.page import Context, answer, end_page, line, start_page
 from planner.ui.reading_corrections import draw_corrections
 from planner.ui.reading_entry import draw_entry
@@ -21,6 +22,7 @@ def say_where_we_are(ctx: Context) -> bool:
     rows = morning_of(ctx).rows
     if not rows:
         answer("No drivers yet. Add the first one on Team, then type a reading here.")
+        lead_to("team")
         return False
     waiting = [row.driver for row in rows if row.outcome == "not measured"]
     answer(f"{len(rows) - len(waiting)} of {counted(len(rows), 'driver')} measured today.")

@@ -191,8 +191,13 @@ def main() -> None:
     """Draw the page."""
     ctx = start_page("Team")
     drivers, rounds = len(ctx.store.all(Driver)), len(ctx.store.all(Round))
-    if drivers:
+    places = len(ctx.store.all(Place))
+    if drivers and rounds:
         answer(f"{counted(drivers, 'driver')}, {counted(rounds, 'round')}.")
+    elif drivers:
+        answer(f"{counted(drivers, 'driver')}, no rounds yet: add them with their sessions, or stays.")
+    elif places:
+        answer(f"{counted(places, 'place')}, nobody in the team yet: now the drivers, each with a home.")
     else:
         answer("Nobody in the team yet: add places first, then drivers, then rounds.")
     part = st.segmented_control(

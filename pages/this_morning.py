@@ -15,10 +15,10 @@ from planner.ui.cached import morning_of
 from planner.ui.errors import plain_errors
 from planner.ui.fields import text_field
 from planner.ui.morning_rows import row_html
-from planner.ui.navigation import go_to
+from planner.ui.navigation import go_to, lead_to
 from planner.ui.page import Context, answer, end_page, line, note_for_next_run, start_page
 from planner.ui.text import literal
-from planner.wording import clock, day, elevation, pressure, zone_name
+from planner.wording import clock, counted, day, elevation, pressure, zone_name
 
 Kind: TypeAlias = Literal["told the physician", "note"]
 
@@ -32,7 +32,7 @@ def place_line(screen: ThisMorning, ctx: Context) -> str:
     """Place, elevation, local time and pressure with its source."""
     place, air = screen.place, screen.air
     if place is None or air is None:
-        return "Begin on Team: places first, then drivers."
+        return "Begin with places and drivers."
     when = f"{day(screen.at, place.zone)}, {clock(screen.at, place.zone)} {zone_name(place.zone, screen.at)}"
     if screen.is_spread:
         utc = f"{day(screen.at)}, {clock(screen.at, 'UTC')} UTC"
@@ -108,6 +108,14 @@ def main() -> None:
     screen = morning_of(ctx)
     answer(screen.sentence)
     line(place_line(screen, ctx))
+    if not screen.rows:
+        lead_to("team")
+    guessed = sum(not row.where.is_planned for row in screen.rows)
+    if guessed:
+        line(
+            f"No stay is planned now for {counted(guessed, 'driver')}: the range is that of home, or of "
+            "where the last stay ended. Type the stay on Team, or choose a way to the round on Arrival."
+        )
     low_pct = floor_pct([morning for row in screen.rows for morning in row.mornings])
     for row in screen.rows:
         draw_row(row, screen, low_pct, ctx)

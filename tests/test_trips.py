@@ -115,3 +115,14 @@ def test_the_page_keeps_a_stay_and_undoes_it(store: Store, monkeypatch: pytest.M
     assert stay.arrive_at.astimezone(UTC).minute == 0
     at = press(at, "Undo")
     assert store.all(Stay) == []
+
+
+def test_a_guessed_place_is_called_one_on_the_morning_and_the_reading(
+    store: Store, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    own_team(store)
+    mark_begun_empty(store)
+    monkeypatch.setenv("PLANNER_STORE", str(store.path))
+    assert "No stay is planned now for 1 driver" in said(open_page("this_morning"))
+    at = open_page("readings")
+    assert "at Low Moor, 80 m (guessed, no stay planned)" in said(at)

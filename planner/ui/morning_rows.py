@@ -58,10 +58,7 @@ def whereabout_words(where: Whereabout, units: UnitChoice) -> str:
     place = f"{where.place.name}, {elevation(where.bed_elevation_m, units)}"
     if where.on_the_way:
         return f"on the way to {place}"
-    if where.is_planned:
-        return f"at {place}"
-    guess = "at home" if where.arrived_at is None else "still there"
-    return f"at {place} (no stay planned now: taken to be {guess})"
+    return f"at {place}" if where.is_planned else f"at {place} (guessed, no stay planned)"
 
 
 def _place(row: DriverRow, now: datetime, units: UnitChoice) -> str:

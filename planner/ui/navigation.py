@@ -38,6 +38,11 @@ def go_to(stem: str, driver_id: int | None = None) -> NoReturn:
     st.switch_page(pages_folder() / f"{stem}.py")
 
 
+def lead_to(stem: str) -> None:
+    """Draw a link to another page."""
+    st.page_link(pages_folder() / f"{stem}.py", label=dict(PAGES)[stem])
+
+
 def driver_handed_on() -> int | None:
     """The driver that the page before handed on, once."""
     driver_id: int | None = st.session_state.pop(_DRIVER, None)
