@@ -40,7 +40,7 @@ def go_to(stem: str, driver_id: int | None = None) -> NoReturn:
 
 def lead_to(stem: str) -> None:
     """Draw a link to another page."""
-    st.page_link(pages_folder() / f"{stem}.py", label=dict(PAGES)[stem])
+    st.page_link(pages_folder() / f"{stem}.py", label=f"Go to {dict(PAGES)[stem]}")
 
 
 def driver_handed_on() -> int | None:

@@ -18,6 +18,7 @@ from planner.services.importing import load_demo, start_empty
 from planner.store.store import Store
 from planner.ui.cautions import emergency_signs_button, footer
 from planner.ui.errors import plain_errors
+from planner.ui.navigation import go_to
 from planner.ui.style import style_sheet
 from planner.ui.text import escaped, literal
 from planner.units import TO_HOUSE
@@ -165,5 +166,4 @@ def _offer_a_start(context: Context) -> None:
     if own:
         start_empty(context.store)
         workspace.mark_begun_empty(context.store)
-        note_for_next_run("Begin on Team: places first, then drivers.")
-        st.rerun()
+        go_to("team")

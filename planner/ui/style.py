@@ -27,6 +27,8 @@ button[data-testid="stBaseButton-tertiary"],
 [data-testid="stExpandSidebarButton"]{min-height:2.75rem;min-width:5.5rem;color:var(--accent)}
 [data-testid="stExpandSidebarButton"]::after{content:"Menu";font-size:.9375rem}
 [data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
+[data-testid="stPageLink"] a{padding-left:0}
+[data-testid="stPageLink"] a *{color:var(--accent)}
 .p-over{font-size:.8125rem;color:var(--muted);letter-spacing:.02em;line-height:1.4}
 .p-answer{font-size:1.375rem;font-weight:600;line-height:1.3;margin:0;padding:0}
 .p-line{color:var(--muted);font-size:.9375rem;line-height:1.45}
