@@ -125,6 +125,16 @@ def test_weigh_in_and_weigh_out_in_four_taps(page: AppTest, demo_store: Store) -
     assert kept.id not in {w.id for w in demo_store.all(Weighing)}
 
 
+@pytest.mark.parametrize(("where", "label"), [("Weigh", "Mass_before"), ("Day", "Mass")])
+def test_what_was_half_typed_is_there_after_another_page(page: AppTest, where: str, label: str) -> None:
+    at = typed(part(page, where), **{label: 79.2}).run()
+    for stem in ("places", "fluids"):
+        at = at.switch_page(f"../pages/{stem}.py").run()
+        assert not at.exception
+    field = next(n for n in at.number_input if n.label.startswith(label.replace("_", " ")))
+    assert field.value == 79.2
+
+
 def test_a_mass_in_pounds_is_refused_and_stays_typed(page: AppTest, demo_store: Store) -> None:
     amount = len(demo_store.all(Weighing))
     at = typed(part(page, "Weigh"), Mass_before=174.0)

@@ -64,34 +64,39 @@ def _draw_form(ctx: Context) -> None:
     entry = int(st.session_state.get(_ROUND, 0))
     names = {d.id: d.name for d in drivers}
     marked = morning_fluid_findings(ctx.store, ctx.now, calendar_of(ctx), ctx.units)
-    with st.form(f"mark_{entry}", border=False):
-        driver_id = st.pills(
-            "Driver",
-            list(names),
-            default=next((each for each in names if each not in marked), None),
-            format_func=lambda each: literal(names[each]),
-            key=f"mark_driver_{entry}",
-        )
-        left, right = st.columns(2, wrap=False)
-        body = left.number_input(
-            f"Mass, {unit_name(ctx.units.mass)}",
-            value=None,
-            step=0.1,
-            format="%.1f",
-            key=f"mark_mass_{entry}",
-        )
-        gravity = right.number_input(
-            "Specific gravity",
-            value=None,
-            step=0.001,
-            format="%.3f",
-            placeholder="1.0…",
-            key=f"mark_sg_{entry}",
-        )
-        colour = st.segmented_control("Urine colour, 8 is darkest", URINE_COLOURS, key=f"mark_colour_{entry}")
-        thirsty = st.segmented_control("Thirsty", ["no", "yes"], key=f"mark_thirst_{entry}")
-        pressed = st.form_submit_button("Keep the marks", type="primary", width="stretch")
-    if not pressed:
+    driver_id = st.pills(
+        "Driver",
+        list(names),
+        default=next((each for each in names if each not in marked), None),
+        format_func=lambda each: literal(names[each]),
+        key=f"mark_driver_{entry}",
+        persist_state="session",
+    )
+    left, right = st.columns(2, wrap=False)
+    body = left.number_input(
+        f"Mass, {unit_name(ctx.units.mass)}",
+        value=None,
+        step=0.1,
+        format="%.1f",
+        key=f"mark_mass_{entry}",
+        persist_state="session",
+    )
+    gravity = right.number_input(
+        "Specific gravity",
+        value=None,
+        step=0.001,
+        format="%.3f",
+        placeholder="1.0…",
+        key=f"mark_sg_{entry}",
+        persist_state="session",
+    )
+    colour = st.segmented_control(
+        "Urine colour, 8 is darkest", URINE_COLOURS, key=f"mark_colour_{entry}", persist_state="session"
+    )
+    thirsty = st.segmented_control(
+        "Thirsty", ["no", "yes"], key=f"mark_thirst_{entry}", persist_state="session"
+    )
+    if not st.button("Keep the marks", type="primary", width="stretch", key=f"mark_keep_{entry}"):
         return
     try:
         mass_kg = None if body is None else typed_value("mass", body, "mass_kg", "mass", ctx.units.mass)

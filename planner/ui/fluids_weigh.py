@@ -75,17 +75,16 @@ def _draw_in(ctx: Context) -> None:
     names = {d.id: d.name for d in waiting}
     handed_on = driver_handed_on()
     entry = int(st.session_state.get(_ROUND, 0))
-    with st.form(f"weigh_in_{entry}", border=False):
-        driver_id = st.pills(
-            "Driver",
-            list(names),
-            default=handed_on if handed_on in names else next(iter(names)),
-            format_func=lambda each: literal(names[each]),
-            key=f"in_driver_{entry}",
-        )
-        before = _mass_input(ctx, "Mass before", f"in_mass_{entry}")
-        pressed = st.form_submit_button("Weigh in", type="primary", width="stretch")
-    if not pressed:
+    driver_id = st.pills(
+        "Driver",
+        list(names),
+        default=handed_on if handed_on in names else next(iter(names)),
+        format_func=lambda each: literal(names[each]),
+        key=f"in_driver_{entry}",
+        persist_state="session",
+    )
+    before = _mass_input(ctx, "Mass before", f"in_mass_{entry}")
+    if not st.button("Weigh in", type="primary", width="stretch", key=f"in_keep_{entry}"):
         return
     try:
         kept = weigh_in(
@@ -112,12 +111,12 @@ def _draw_out(ctx: Context) -> None:
         format_func=lambda each: literal(by_id[each].driver.name),
         required=True,
         key=f"out_driver_{entry}",
+        persist_state="session",
     )
     opened = by_id[chosen]
     note(_weighed_in_words(ctx, opened.weighing))
-    with st.form(f"weigh_out_{entry}_{chosen}", border=False):
-        typed = _out_fields(ctx, opened, f"{entry}_{chosen}")
-        pressed = st.form_submit_button("Weigh out", type="primary", width="stretch")
+    typed = _out_fields(ctx, opened, f"{entry}_{chosen}")
+    pressed = st.button("Weigh out", type="primary", width="stretch", key=f"out_keep_{entry}_{chosen}")
     if st.button("Take back the weigh-in", type="tertiary", key=f"undo_in_{chosen}"):
         ctx.store.remove(opened.weighing, by=ctx.who, why="weigh-in taken back")
         note_for_next_run(f"The weigh-in of {opened.driver.name} was taken back.")
@@ -143,6 +142,7 @@ def _out_fields(ctx: Context, opened: OpenWeighing, key: str) -> _OutFields:
         format="%g",
         placeholder="0 if nothing",
         key=f"out_drink_{key}",
+        persist_state="session",
     )
     minutes = st.number_input(
         "Minutes between the weighings",
@@ -150,6 +150,7 @@ def _out_fields(ctx: Context, opened: OpenWeighing, key: str) -> _OutFields:
         step=5.0,
         format="%.0f",
         key=f"out_minutes_{key}",
+        persist_state="session",
     )
     with st.expander("Urine, food, clothes, cockpit"):
         return _OutFields(after, drink, minutes, *_more_out_fields(ctx, opened, key))
@@ -162,15 +163,23 @@ def _more_out_fields(
     degrees = ctx.units.temperature
     left, right = st.columns(2, wrap=False)
     urine = left.number_input(
-        f"Urine, {unit_name(ctx.units.volume)}", value=0.0, step=50.0, format="%g", key=f"out_urine_{key}"
+        f"Urine, {unit_name(ctx.units.volume)}",
+        value=0.0,
+        step=50.0,
+        format="%g",
+        key=f"out_urine_{key}",
+        persist_state="session",
     )
-    food = right.number_input("Eaten, g", value=0.0, step=10.0, format="%g", key=f"out_food_{key}")
+    food = right.number_input(
+        "Eaten, g", value=0.0, step=10.0, format="%g", key=f"out_food_{key}", persist_state="session"
+    )
     clothes = st.segmented_control(
         "Weighed in",
         list(get_args(WeighingClothes)),
         default="towelled skin",
         required=True,
         key=f"out_clothes_{key}",
+        persist_state="session",
     )
     left, right = st.columns(2, wrap=False)
     air = left.number_input(
@@ -179,6 +188,7 @@ def _more_out_fields(
         step=1.0,
         format="%.1f",
         key=f"out_air_{key}",
+        persist_state="session",
     )
     humidity = right.number_input(
         "Cockpit humidity, %",
@@ -186,6 +196,7 @@ def _more_out_fields(
         step=1.0,
         format="%.0f",
         key=f"out_humidity_{key}",
+        persist_state="session",
     )
     note("Without the cockpit's air and humidity the weighing says how much was lost, but teaches no ratio.")
     return urine, food, clothes, air, humidity
@@ -268,6 +279,7 @@ def _mass_input(ctx: Context, label: str, key: str) -> float | None:
         format="%.2f",
         placeholder="on the scale",
         key=key,
+        persist_state="session",
     )
 
 
