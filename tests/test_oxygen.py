@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from planner.constants import AIR_OXYGEN_FRACTION, HPA_PER_MMHG
@@ -30,6 +30,7 @@ def test_plain_air_lies_between_the_published_fractions() -> None:
 
 @FEW
 @given(st.floats(-430.0, 9000.0), LATITUDES)
+@example(9000.0, 31.6875)
 def test_equivalent_elevation_of_plain_air_is_where_one_stands(elevation_m: float, latitude: float) -> None:
     inspired = oxygen.inspired_po2_mmhg(site_pressure(elevation_m, latitude).pressure_hpa)
     assert oxygen.equivalent_elevation_m(inspired, latitude) == pytest.approx(elevation_m, abs=1e-6)

@@ -24,6 +24,8 @@ RESTING_RESPIRATORY_QUOTIENT: Final = 0.85  # mixed diet (published range 0.8 to
 
 # Halvings of -430 to 9000 m that reach the resolution of a double.
 BISECTIONS: Final = 54
+# By so much a pressure may miss the end of that range after its way through inspired oxygen and back.
+ROUNDING: Final = 1e-12
 
 
 def inspired_po2_mmhg(pressure_hpa: FloatLike, oxygen_fraction: FloatLike = AIR_OXYGEN_FRACTION) -> FloatLike:
@@ -112,7 +114,8 @@ def equivalent_elevation_m(inspired_po2_mmhg: FloatLike, latitude_deg: FloatLike
     lowest, highest = QUANTITIES["elevation_m"].low, QUANTITIES["elevation_m"].high
     low = np.full(inspired.shape, lowest)
     high = np.full(inspired.shape, highest)
-    outside = (pressure > _site_pressure_hpa(low, latitude)) | (pressure < _site_pressure_hpa(high, latitude))
+    thickest, thinnest = _site_pressure_hpa(low, latitude), _site_pressure_hpa(high, latitude)
+    outside = (pressure > thickest * (1.0 + ROUNDING)) | (pressure < thinnest * (1.0 - ROUNDING))
     if outside.any():
         raise InputError(
             "inspired_po2_mmhg",
