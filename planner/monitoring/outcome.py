@@ -188,8 +188,8 @@ def _low(sample: Sample, before: Sequence[Sample]) -> Finding:
     first = _confirming(sample, before)
     if first is None:
         return Finding("repeat", f"{measured}: below it, once so far.")
-    before = f"{per_cent(first.reading.spo2_pct)}{_when(first, sample)}"
-    twice = f"{measured}: below it again ({before})"
+    earlier = f"{per_cent(first.reading.spo2_pct)}{_when(first, sample)}"
+    twice = f"{measured}: below it again ({earlier})"
     if is_far_below(sample):
         return Finding("urgent", f"{twice}, and far below.")
     if _is_worse(sample.reading, first.reading):
