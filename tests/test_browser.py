@@ -252,6 +252,16 @@ def test_what_is_half_typed_survives_the_menu_and_the_back_button(visit: Visit) 
     assert page.get_by_label("SpO2, %").input_value() == "91"
 
 
+def test_the_menu_of_a_narrow_screen_leads_to_the_page_and_closes(visit: Visit) -> None:
+    page = visit("readings", window="phone").page
+    page.get_by_role("button", name="Readings", exact=True).click()
+    page.locator('[data-testid="stPopoverBody"]').get_by_role("link", name="Places").click()
+    page.wait_for_url("**/places")
+    settled(page)
+    assert page.locator('[data-testid="stPopoverBody"]').count() == 0
+    assert page.get_by_role("button", name="Places", exact=True).is_visible()
+
+
 def test_the_keyboard_keeps_a_reading_once(visit: Visit) -> None:
     page = visit("readings").page
     page.get_by_role("radio", name="Ilse Varnholt").click()

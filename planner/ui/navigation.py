@@ -38,6 +38,13 @@ def go_to(stem: str, driver_id: int | None = None) -> NoReturn:
     st.switch_page(pages_folder() / f"{stem}.py")
 
 
+def draw_menu() -> None:
+    """Draw a link to every page."""
+    for stem, title in PAGES:
+        if (pages_folder() / f"{stem}.py").is_file():
+            st.page_link(pages_folder() / f"{stem}.py", label=title)
+
+
 def lead_to(stem: str) -> None:
     """Draw a link to another page."""
     st.page_link(pages_folder() / f"{stem}.py", label=f"Go to {dict(PAGES)[stem]}")

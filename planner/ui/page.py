@@ -18,7 +18,7 @@ from planner.services.importing import load_demo, start_empty
 from planner.store.store import Store
 from planner.ui.cautions import emergency_signs_button, footer
 from planner.ui.errors import plain_errors
-from planner.ui.navigation import go_to
+from planner.ui.navigation import draw_menu, go_to
 from planner.ui.style import style_sheet
 from planner.ui.text import escaped, literal
 from planner.units import TO_HOUSE
@@ -117,8 +117,16 @@ def _head(title: str, context: Context) -> None:
         key="p-head",
     ):
         st.html(f'<div class="p-over">{escaped(title)}</div>')
+        # On a narrow screen the page's name is the menu: the frontend's own lies over the page that was
+        # chosen, and closes by itself on telephones only.
+        menu = st.popover(
+            title, type="tertiary", icon=":material/menu:", key=f"p-menu-{title}", on_change="rerun"
+        )
         emergency_signs_button()
         you = st.popover(literal(context.who), type="tertiary", key="you", on_change="rerun")
+    if menu.open:
+        with menu:
+            draw_menu()
     if you.open:
         with you, plain_errors():
             you_form(context, "you_form")

@@ -23,11 +23,11 @@ button[data-testid="stBaseButton-tertiary"],
 [class*="st-key-p-acts-"] button{min-height:1.75rem;padding:0}
 .st-key-p-acts-last{gap:1.25rem}
 .st-key-p-card-correct,.st-key-p-card-ill{margin-bottom:0;padding-bottom:.9rem}
-.stApp a[aria-current="page"]{background:color-mix(in srgb,var(--accent) 14%,transparent)}
-[data-testid="stExpandSidebarButton"]{min-height:2.75rem;min-width:5.5rem;color:var(--accent)}
-[data-testid="stExpandSidebarButton"]::after{content:"Menu";font-size:.9375rem}
+a[aria-current="page"][aria-current="page"]{background:color-mix(in srgb,var(--accent) 14%,transparent)}
+[class*="st-key-p-menu-"]{display:none}
 [data-testid="stAlertContainer"]{border:1px solid var(--rule);border-left:4px solid currentColor}
-[data-testid="stPageLink"] a{padding-left:0}
+.stApp [data-testid="stPageLink"] a,[data-testid="stPopoverBody"] [data-testid="stPageLink"] a{padding-left:0;
+ background:transparent}
 [data-testid="stPageLink"] a *{color:var(--accent)}
 .p-over{font-size:.8125rem;color:var(--muted);letter-spacing:.02em;line-height:1.4}
 .p-answer{font-size:1.375rem;font-weight:600;line-height:1.3;margin:0;padding:0}
@@ -51,10 +51,18 @@ button[data-testid="stBaseButton-tertiary"],
 .p-do{font-weight:600}
 .st-key-p-type,.st-key-p-import{max-width:48rem}
 .p-kept{border-left:3px solid var(--accent);padding:.15rem .75rem;font-size:.9375rem}
+@media (max-width:767.98px){
+ [data-testid="stHeader"],[data-testid="stSidebar"]{display:none}
+ .stMainBlockContainer{padding-top:.5rem}
+ .st-key-p-head>:has(.p-over){display:none}
+ [class*="st-key-p-menu-"]{display:flex;margin-right:auto}
+}
 @media (max-width:640px){
+ .st-key-you{min-width:0;max-width:6.5rem}
+ .st-key-you p{overflow:hidden;text-overflow:ellipsis;white-space:nowrap}
  .stApp button kbd{display:none}
  [data-testid="stCheckbox"] label{min-height:2.5rem}
- [data-testid="stSidebarNavLink"]{min-height:2.75rem}
+ [data-testid="stPopoverBody"] [data-testid="stPageLink"] a{min-height:2.75rem}
  [data-testid="stNumberInput"] button{min-width:2.5rem}
  .p-foot summary{padding:.75rem 0}
  [data-testid="stButtonGroup"] button{min-height:2.5rem}
