@@ -129,9 +129,11 @@ Visit: TypeAlias = Callable[..., Watched]
 
 
 @pytest.fixture(scope="module")
-def browser() -> Iterator[Browser]:
+def browser(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Browser]:
+    # The browser keeps a folder for reports of its crashes, in the user's home unless told otherwise.
+    environment = {**os.environ, "XDG_CONFIG_HOME": str(tmp_path_factory.mktemp("browser"))}
     with sync_playwright() as playwright:
-        launched = playwright.chromium.launch(executable_path=chromium(), args=FLAGS)
+        launched = playwright.chromium.launch(executable_path=chromium(), args=FLAGS, env=environment)
         yield launched
         launched.close()
 
