@@ -51,13 +51,21 @@ a[aria-current="page"][aria-current="page"]{background:color-mix(in srgb,var(--a
 .p-do{font-weight:600}
 .st-key-p-type,.st-key-p-import{max-width:48rem}
 .p-kept{border-left:3px solid var(--accent);padding:.15rem .75rem;font-size:.9375rem}
+@media (max-width:1023.98px){
+ [class*="st-key-p-card-"]:has(.p-row) [data-testid="stHorizontalBlock"]{flex-wrap:wrap}
+ [class*="st-key-p-card-"]:has(.p-row) [data-testid="stColumn"]{min-width:100%}
+ [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem;margin-top:-.75rem}
+ .st-key-p-acts-last{margin-top:0}
+ .p-row{grid-template-columns:minmax(0,1fr) auto;row-gap:.35rem}
+ .p-row .p-wide{grid-column:1/-1}
+}
 @media (max-width:767.98px){
  [data-testid="stHeader"],[data-testid="stSidebar"]{display:none}
  .stMainBlockContainer{padding-top:.5rem}
  .st-key-p-head>:has(.p-over){display:none}
  [class*="st-key-p-menu-"]{display:flex;margin-right:auto}
 }
-@media (max-width:640px){
+@media (max-width:640px),(pointer:coarse){
  .st-key-you{min-width:0;max-width:6.5rem}
  .st-key-you p{overflow:hidden;text-overflow:ellipsis;white-space:nowrap}
  .stApp button kbd{display:none}
@@ -66,12 +74,8 @@ a[aria-current="page"][aria-current="page"]{background:color-mix(in srgb,var(--a
  [data-testid="stNumberInput"] button{min-width:2.5rem}
  .p-foot summary{padding:.75rem 0}
  [data-testid="stButtonGroup"] button{min-height:2.5rem}
- [class*="st-key-p-acts-"]{flex-direction:row;gap:1.25rem;margin-top:-.75rem}
- .st-key-p-acts-last{margin-top:0}
  [class*="st-key-p-acts-"] button{min-height:2.75rem}
  .stMainBlockContainer{padding-left:.875rem;padding-right:.875rem}
- .p-row{grid-template-columns:minmax(0,1fr) auto;row-gap:.35rem}
- .p-row .p-wide{grid-column:1/-1}
  .p-answer{font-size:1.25rem}
 }
 """
