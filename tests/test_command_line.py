@@ -249,3 +249,10 @@ def test_a_port_in_use_is_refused_in_one_line(capsys: pytest.CaptureFixture[str]
     assert capsys.readouterr().err == (
         f"planner: port: {number} cannot be used, expected a port that no other program uses\n"
     )
+
+
+@pytest.mark.parametrize("pressure_hpa", ["300", "1100"])
+def test_air_answers_at_both_ends_of_the_pressures_that_can_be_typed(pressure_hpa, capsys) -> None:
+    """computed: 300 and 1100 hPa stand for elevations beyond -430 to 9000 m in the standard atmosphere."""
+    assert main(["air", "2240", "--pressure-hpa", pressure_hpa, "--json"]) == 0
+    assert json.loads(capsys.readouterr().out)["aerobic_capacity_pct"] <= 100.0

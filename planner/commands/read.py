@@ -27,7 +27,7 @@ def _run(arguments: argparse.Namespace) -> Answer:
     record = {
         "taken": report.taken,
         "already_there": report.already_there,
-        "refused": len(report.refused),
+        "refused": report.refused_lines,
         "refusals": [str(each) for each in report.refused],
     }
     return Answer(record)

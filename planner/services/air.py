@@ -8,7 +8,7 @@ from typing import Final
 
 import numpy as np
 
-from planner.checks import FloatLike, checked, like
+from planner.checks import QUANTITIES, FloatLike, checked, like
 from planner.constants import SEA_LEVEL_PRESSURE_HPA
 from planner.monitoring.model import Wakefulness
 from planner.physiology.acclimatisation import ExposureHistory
@@ -104,6 +104,12 @@ def capacity_there(air: SiteAir, days: FloatLike) -> Capacity:
 
     The published curves go by elevation; a measured pressure counts as the standard elevation it stands for.
     """
-    elevation_m = standard_elevation_m(air.pressure_hpa) if air.measured else air.elevation_m
+    elevation_m: FloatLike = air.elevation_m
+    if air.measured:
+        # A pressure may stand for an elevation just beyond those that the curves accept: take their end.
+        known = QUANTITIES["elevation_m"]
+        elevation_m = like(
+            np.clip(standard_elevation_m(air.pressure_hpa), known.low, known.high), air.pressure_hpa
+        )
     low, high = aerobic_capacity_range_pct(elevation_m, days)
     return Capacity(aerobic_capacity_pct(elevation_m, days), low, high)
