@@ -215,8 +215,8 @@ def show_change(
         ],
     ]
     table(["", "now", "with what you typed"], rows, right=(1, 2))
-    if venues.is_unusual(place, typed.pressure_hpa):
-        away = typed.pressure_hpa - venues.model_pressure_hpa(place)
+    away = venues.unusual_difference_hpa(place, typed.pressure_hpa)
+    if away is not None:
         line(
             f"That is {pressure(abs(away), ctx.units)} {'above' if away > 0 else 'below'} the model "
             "atmosphere, more than weather usually does. Look again before keeping it."

@@ -10,11 +10,11 @@ from pathlib import Path
 from typing import NoReturn
 
 from planner import __version__
-from planner.commands.application import DEFAULT_PORT, start
 from planner.commands.command import Answer, Command
 from planner.commands.printing import as_json, as_text
 from planner.commands.registry import COMMANDS
 from planner.errors import PlannerError
+from planner.ui.server import DEFAULT_PORT, start
 
 WRONG_INPUT = 2
 

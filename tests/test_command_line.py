@@ -13,10 +13,10 @@ from pathlib import Path
 import pytest
 
 from planner.__main__ import main
-from planner.commands import application
 from planner.commands.command import Answer
 from planner.commands.printing import as_json, as_text
 from planner.commands.registry import COMMANDS
+from planner.ui import server
 
 AIR_KEYS = [
     "pressure_hpa",
@@ -237,7 +237,7 @@ def test_the_app_is_started_with_the_shipped_settings_as_flags(
     assert ("--client.showErrorDetails", "none") in pairs
     assert ("--server.port", "8699") in pairs
     assert os.environ["PLANNER_STORE"] == str(tmp_path / "x.db")
-    assert Path(words[2]) == application.PACKAGE / "app.py"
+    assert Path(words[2]) == server.PACKAGE / "app.py"
 
 
 def test_a_port_in_use_is_refused_in_one_line(capsys: pytest.CaptureFixture[str]) -> None:
@@ -256,3 +256,10 @@ def test_air_answers_at_both_ends_of_the_pressures_that_can_be_typed(pressure_hp
     """computed: 300 and 1100 hPa stand for elevations beyond -430 to 9000 m in the standard atmosphere."""
     assert main(["air", "2240", "--pressure-hpa", pressure_hpa, "--json"]) == 0
     assert json.loads(capsys.readouterr().out)["aerobic_capacity_pct"] <= 100.0
+
+
+@pytest.mark.parametrize(("pressure_hpa", "told"), [("1013", True), ("780", False)])
+def test_air_says_when_a_pressure_cannot_be_that_of_the_place(pressure_hpa, told, capsys) -> None:
+    """judgement: further than 6 % from the model atmosphere; 1013 hPa is one reduced to sea level."""
+    assert main(["air", "2240", "--pressure-hpa", pressure_hpa]) == 0
+    assert ("reduced to sea level" in capsys.readouterr().out) is told

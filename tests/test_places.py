@@ -11,11 +11,12 @@ import pytest
 from planner.errors import InputError
 from planner.season.exposure import MEASUREMENT_REACH
 from planner.season.model import Place, PressureMeasurement
+from planner.season.pressure import model_pressure_hpa
 from planner.services.places import (
     days_there,
-    is_unusual,
     pressure_in_force,
     typed_pressure,
+    unusual_difference_hpa,
     venue_air,
 )
 
@@ -111,8 +112,8 @@ def test_a_pressure_that_cannot_be_the_one_there_is_refused(
 
 
 def test_an_unusual_pressure_is_taken_but_noticed() -> None:
-    assert not is_unusual(HIGH, 780.0)
-    assert is_unusual(HIGH, 810.0)
+    assert unusual_difference_hpa(HIGH, 780.0) is None
+    assert unusual_difference_hpa(HIGH, 810.0) == pytest.approx(810.0 - model_pressure_hpa(HIGH))
     assert typed_pressure(HIGH, 810.0, "hPa", "station pressure", NOW).pressure_hpa == 810.0
 
 

@@ -5,9 +5,9 @@ from __future__ import annotations
 import re
 from pathlib import Path
 
-from planner.commands.application import DEFAULT_PORT
 from planner.commands.registry import COMMANDS
 from planner.services.workspace import STORE_FILE, STORE_VARIABLE
+from planner.ui.server import DEFAULT_PORT
 
 ROOT = Path(__file__).resolve().parents[1]
 README = (ROOT / "README.md").read_text(encoding="utf-8")

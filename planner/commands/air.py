@@ -8,6 +8,10 @@ import math
 from planner.commands.command import Answer, Command, number
 
 CAUTION = "Of healthy people at rest 95 % of readings lie in this range; no diagnosis, the physician decides."
+NOT_THERE = (
+    "The pressure is far from what the air at that elevation weighs: "
+    "one reduced to sea level gives wrong figures."
+)
 BEYOND = "Beyond the elevations and times that the model was fitted to: an extrapolation."
 
 
@@ -39,6 +43,7 @@ def _add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def _run(arguments: argparse.Namespace) -> Answer:
     # Imported here: numpy is not needed to print a usage line.
+    from planner.season.pressure import IMPLAUSIBLE_SHARE
     from planner.services.air import capacity_there, site_air, straight_from_sea_level
 
     air = site_air(
@@ -60,7 +65,13 @@ def _run(arguments: argparse.Namespace) -> Answer:
         "high_spo2_pct": float(expected.high_spo2_pct),
         "aerobic_capacity_pct": float(capacity_there(air, days).mean_pct),
     }
-    return Answer(record, notes=(BEYOND, CAUTION) if expected.beyond_validity else (CAUTION,))
+    model = site_air(arguments.elevation_m, latitude_deg=arguments.latitude)
+    notes = []
+    if abs(air.pressure_hpa / model.pressure_hpa - 1.0) > IMPLAUSIBLE_SHARE:
+        notes.append(NOT_THERE)
+    if expected.beyond_validity:
+        notes.append(BEYOND)
+    return Answer(record, notes=(*notes, CAUTION))
 
 
 COMMAND = Command("air", "the air at an elevation and the saturation to expect there", _add_arguments, _run)

@@ -8,7 +8,7 @@ from typing import Final
 import numpy as np
 
 from planner.checks import FloatArray, FloatLike, checked, like
-from planner.constants import SEA_LEVEL_PRESSURE_HPA
+from planner.constants import DEVIATIONS_95, SEA_LEVEL_PRESSURE_HPA
 from planner.physiology.heat import (
     ALTITUDE_EXPONENT,
     body_surface_area_m2,
@@ -35,8 +35,6 @@ SCALE_SD_G: Final = 50.0  # of one weighing on a good platform scale (judgement)
 
 # The stated ranges hold nine of ten: 1.645 standard deviations either way.
 RANGE_SD: Final = 1.645
-# The ends of a working range are read as the 2.5th and 97.5th percentile (judgement).
-ENDS_SD: Final = 1.96
 
 
 @dataclass(frozen=True)
@@ -179,7 +177,8 @@ def predicted_sweat(
     maximal = np.asarray(balance.maximal_w_m2)
     sweat = _gonzalez_g_m2_h(required, maximal)
 
-    spans = np.abs(sweat[2::2] - sweat[1::2]) / (2.0 * ENDS_SD)
+    # The ends of a working range are read as the 2.5th and 97.5th percentile (judgement).
+    spans = np.abs(sweat[2::2] - sweat[1::2]) / (2.0 * DEVIATIONS_95)
     conditions_sd = np.sqrt((spans[:3] ** 2).sum(axis=0))
     person_sd = np.sqrt((spans[3:] ** 2).sum(axis=0) + GONZALEZ_SEE_G_M2_H**2)
     highest = sweat_cap_g_m2_h(acclimatised)

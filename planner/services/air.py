@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import isfinite, nan
-from typing import Final
 
 import numpy as np
 
 from planner.checks import QUANTITIES, FloatLike, checked, like
-from planner.constants import SEA_LEVEL_PRESSURE_HPA
+from planner.constants import HOURS_PER_DAY
 from planner.monitoring.model import Wakefulness
 from planner.physiology.acclimatisation import ExposureHistory
 from planner.physiology.air import (
@@ -21,9 +20,7 @@ from planner.physiology.air import (
 from planner.physiology.capacity import aerobic_capacity_pct, aerobic_capacity_range_pct
 from planner.physiology.expectation import Expectation, expected_spo2
 from planner.physiology.oxygen import inspired_po2_mmhg
-
-HOURS_PER_DAY: Final = 24.0
-SEA_LEVEL_INSPIRED_PO2_MMHG: Final = float(inspired_po2_mmhg(SEA_LEVEL_PRESSURE_HPA))
+from planner.physiology.ventilation import REFERENCE_INSPIRED_PO2_MMHG
 
 
 @dataclass(frozen=True)
@@ -49,7 +46,7 @@ class SiteAir:
     @property
     def oxygen_share_pct(self) -> float:
         """Inspired oxygen tension in per cent of that at standard sea level."""
-        return 100.0 * self.inspired_po2_mmhg / SEA_LEVEL_INSPIRED_PO2_MMHG
+        return 100.0 * self.inspired_po2_mmhg / REFERENCE_INSPIRED_PO2_MMHG
 
 
 def site_air(elevation_m: float, *, latitude_deg: float = nan, measured_pressure_hpa: float = nan) -> SiteAir:
@@ -83,7 +80,7 @@ def straight_from_sea_level(
     at_h = checked("days", days) * HOURS_PER_DAY
     history = ExposureHistory(
         start_h=np.array([-HOURS_PER_DAY, 0.0]),
-        inspired_po2_mmhg=np.array([SEA_LEVEL_INSPIRED_PO2_MMHG, air.inspired_po2_mmhg]),
+        inspired_po2_mmhg=np.array([REFERENCE_INSPIRED_PO2_MMHG, air.inspired_po2_mmhg]),
     )
     return expected_spo2(
         history, like(at_h, days), wakefulness=wakefulness, pressure_sd_hpa=air.pressure_sd_hpa

@@ -12,10 +12,9 @@ from planner.season.arrival import Option, arrival_options
 from planner.season.arrival_ways import Gap, Kind, gap_before
 from planner.season.constraints import Limits, local_date
 from planner.season.evaluate import RoundPoint, Setting, round_point
-from planner.season.itinerary import Fixed, Itinerary, fixed_points
+from planner.season.itinerary import Fixed, Itinerary
 from planner.season.model import Driver, Place, Round
-from planner.season.travel import LegTimes
-from planner.services.driver import driver_view
+from planner.services.itineraries import fixed_of, planning_setting
 from planner.services.limits import keep_limits, kept_limits, season_limits
 from planner.services.season import Calendar, read_calendar
 from planner.services.workspace import now
@@ -87,14 +86,7 @@ def arrival(
     calendar, at = read_calendar(store), now(store)
     point = _point(calendar, given)
     fixed = tuple(fixed_of(calendar, driver))
-    setting = Setting(
-        driver=driver,
-        places=calendar.places,
-        times=LegTimes(calendar.places, calendar.legs),
-        track_days=calendar.days_at_the_track,
-        pressures=calendar.pressures,
-        person=driver_view(store, calendar, driver, at).person,
-    )
+    setting = planning_setting(store, calendar, driver, at)
     itinerary = calendar.itinerary_of(driver)
     asked = season_limits(store) if limits is None else limits
     by = kept_order(store) if order is None else order
@@ -170,12 +162,6 @@ def _point(calendar: Calendar, given: Round) -> RoundPoint:
     return round_point(
         given.id, given.name, place, calendar.starts_at(given), calendar.race_of(given).starts_at
     )
-
-
-def fixed_of(calendar: Calendar, driver: Driver) -> list[Fixed]:
-    """Everything that ties a driver to a place, in time order."""
-    sessions = [session for each in calendar.sessions.values() for session in each]
-    return fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id)
 
 
 def _not_in_the_past(option: Option, at: datetime, places: Mapping[int, Place]) -> Option:

@@ -9,10 +9,11 @@ from typing import Final
 from planner.errors import InputError, StoreError
 from planner.season.arrival import Option, limit_failures
 from planner.season.evaluate import COUNTED_BEFORE, ascent_warnings
-from planner.season.itinerary import Itinerary, broken, differences, problems
+from planner.season.itinerary import Itinerary, broken, problems
 from planner.season.model import Driver, Round
 from planner.season.nights import ascent_to, nights_of
-from planner.services.arrival import Arrival, fixed_of
+from planner.services.arrival import Arrival
+from planner.services.itineraries import fixed_of, write_itinerary
 from planner.services.season import Calendar, read_calendar
 from planner.store.history import in_force
 from planner.store.store import Store
@@ -78,7 +79,7 @@ def choose(store: Store, found: Arrival, option: Option, *, by: str, ascent_reas
     with store.transaction(by, why) as change_set_id:
         _refuse_if_stale(store, found)
         _refuse_unless_whole(found, option.itinerary)
-        _write(store, found.planned, option.itinerary, by)
+        write_itinerary(store, found.planned, option.itinerary, by=by)
         choice = Choice(change_set_id, found.driver.id, found.round.id, option.title, by, reason)
         kept = [asdict(each) for each in (*_kept(store), choice)]
         store.set_setting(SETTING, json.dumps(kept, ensure_ascii=False))
@@ -146,12 +147,3 @@ def _refuse_unless_whole(found: Arrival, chosen: Itinerary) -> None:
     wrong = [*problems(chosen, places), *missed]
     if wrong:
         raise InputError("way", found.round.name, f"an itinerary that is whole: {' '.join(wrong)}")
-
-
-def _write(store: Store, planned: Itinerary, chosen: Itinerary, by: str) -> None:
-    changes = differences(planned, chosen)
-    for entry in changes.removed:
-        store.remove(entry, by=by)
-    for entry in changes.changed:
-        store.change(entry, by=by)
-    store.add_all(changes.added, by=by)

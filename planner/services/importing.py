@@ -16,7 +16,7 @@ from planner.exchange.registry import KINDS, kind_called, recognised
 from planner.exchange.tables import Column, cell_text, read_table
 from planner.exchange.times import read_instant
 from planner.season.model import Driver, Place, Round, Session, Stay
-from planner.services.workspace import FROZEN_CLOCK
+from planner.services.workspace import FROZEN_CLOCK, mark_begun_empty
 from planner.store.store import Store
 
 READINGS_KIND: Final = READINGS.name
@@ -121,8 +121,9 @@ def load_demo(store: Store) -> None:
 
 
 def start_empty(store: Store) -> None:
-    """Begin without data: the clock is the real one."""
+    """Begin without data: the clock is the real one, and the demo is not offered again."""
     store.set_setting(FROZEN_CLOCK, None)
+    mark_begun_empty(store)
 
 
 def _context(store: Store, now: datetime) -> FileContext:

@@ -15,6 +15,7 @@ from planner.errors import InputError
 from planner.physiology.air import site_pressure, station_pressure_from_altimeter_setting_hpa
 from planner.season.exposure import MEASUREMENT_REACH
 from planner.season.model import Place, PressureMeasurement, Round, Session
+from planner.season.pressure import IMPLAUSIBLE_SHARE, model_pressure_hpa
 from planner.services.air import SiteAir, capacity_there, site_air, straight_from_sea_level
 from planner.services.typed import typed_value
 from planner.store.store import Store
@@ -24,10 +25,7 @@ PressureKind: TypeAlias = Literal["station pressure", "altimeter setting"]
 
 # On arrival (day 0) and after so many days there.
 DAYS_SHOWN: Final = (0.0, 3.0, 7.0, 14.0)
-# A typed pressure further from the model than this is refused: judgement. Deep lows and strong highs
-# move the pressure by about 4 %; a pressure reduced to sea level is 20 % off at 2 000 m.
-IMPLAUSIBLE_SHARE: Final = 0.06
-# And beyond this it is taken, but the screen asks to look again: judgement.
+# Beyond this a typed pressure is taken, but the screen asks to look again: judgement.
 UNUSUAL_SHARE: Final = 0.025
 
 
@@ -98,11 +96,6 @@ def days_there(air: SiteAir, days: tuple[float, ...] = DAYS_SHOWN) -> list[DayTh
     ]
 
 
-def model_pressure_hpa(place: Place) -> float:
-    """Return the pressure at the track by the model atmosphere for its latitude."""
-    return float(site_pressure(place.track_elevation_m, place.latitude_deg).pressure_hpa)
-
-
 def typed_pressure(
     place: Place, value: float, unit: str, kind: PressureKind, at: datetime
 ) -> PressureMeasurement:
@@ -131,9 +124,11 @@ def typed_pressure(
     return PressureMeasurement(place.id, at, pressure_hpa, typed=f"{kind} {value:g} {unit}")
 
 
-def is_unusual(place: Place, pressure_hpa: float) -> bool:
-    """Return whether a pressure lies so far from the model that the entry deserves a second look."""
-    return abs(pressure_hpa / model_pressure_hpa(place) - 1.0) > UNUSUAL_SHARE
+def unusual_difference_hpa(place: Place, pressure_hpa: float) -> float | None:
+    """How far above the model a pressure lies, when so far that the entry deserves a second look [hPa]."""
+    model_hpa = model_pressure_hpa(place)
+    away_hpa = pressure_hpa - model_hpa
+    return away_hpa if abs(away_hpa) > UNUSUAL_SHARE * model_hpa else None
 
 
 def pressures_of(store: Store, place: Place) -> list[PressureMeasurement]:

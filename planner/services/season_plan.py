@@ -14,14 +14,13 @@ from planner.season.constraints import IronCheck, Limits, iron_check, local_date
 from planner.season.day_model import Combination, Measure, Rates
 from planner.season.day_problem import DaySeason, day_season
 from planner.season.evaluate import Costs, RoundOutlook, RoundPoint, Setting, costs, outlooks, round_point
-from planner.season.itinerary import Fixed, Itinerary, broken, differences, fixed_points, problems
+from planner.season.itinerary import Fixed, Itinerary, broken, fixed_points, problems
 from planner.season.model import Driver, Place, Round, Stay
 from planner.season.nights import ONE_DAY, nights_of
 from planner.season.obstacles import in_the_way
 from planner.season.search import TradeOff, search
 from planner.season.season_task import Lock, SeasonTask, Wish
-from planner.season.travel import LegTimes
-from planner.services.driver import driver_view
+from planner.services.itineraries import fixed_of, planning_setting, write_itinerary
 from planner.services.limits import season_limits
 from planner.services.season import Calendar, read_calendar
 from planner.services.workspace import now
@@ -192,16 +191,8 @@ def season_task(store: Store, driver: Driver, question: Question) -> SeasonTask:
     if not ahead:
         raise InputError("season", driver.name, "a high round ahead")
     itinerary = calendar.itinerary_of(driver)
-    setting = Setting(
-        driver=driver,
-        places=calendar.places,
-        times=LegTimes(calendar.places, calendar.legs),
-        track_days=calendar.days_at_the_track,
-        pressures=calendar.pressures,
-        person=driver_view(store, calendar, driver, at).person,
-    )
-    sessions = [session for each in calendar.sessions.values() for session in each]
-    fixed = tuple(fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id))
+    setting = planning_setting(store, calendar, driver, at)
+    fixed = tuple(fixed_of(calendar, driver))
     rules = season_limits(store)
     task = SeasonTask(
         setting=setting,
@@ -261,19 +252,13 @@ def keep_plan(store: Store, plans: SeasonPlans, number: int, *, by: str) -> int:
     with store.transaction(by, why) as change_set_id:
         if _ground(read_calendar(store), plans.driver) != _ground_of(task):
             raise StoreError("the season has changed since the search; nothing was written: search again")
-        changes = differences(task.itinerary, new)
-        for entry in changes.removed:
-            store.remove(entry, by=by)
-        for entry in changes.changed:
-            store.change(entry, by=by)
-        store.add_all(changes.added, by=by)
+        write_itinerary(store, task.itinerary, new, by=by)
     return change_set_id
 
 
 def _ground(calendar: Calendar, driver: Driver) -> tuple[object, ...]:
     """What a search rests on, to tell whether it has changed since."""
-    sessions = [session for each in calendar.sessions.values() for session in each]
-    fixed = tuple(fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id))
+    fixed = tuple(fixed_of(calendar, driver))
     known = next((each for each in calendar.drivers if each.id == driver.id), None)
     return known, calendar.itinerary_of(driver), fixed, dict(calendar.places)
 

@@ -10,7 +10,6 @@ from typing import Final, TypeAlias, TypeVar
 from planner.errors import InputError
 from planner.season.model import Commitment, Driver, Place, Round, Session
 from planner.services.importing import start_empty
-from planner.services.workspace import mark_begun_empty
 from planner.store.store import Store
 
 TeamRecord: TypeAlias = Driver | Place | Round | Session | Commitment
@@ -70,7 +69,6 @@ def begin_own_team(store: Store, *, by: str) -> int:
             for record in store.all(kind):
                 store.remove(record, by=by)
         start_empty(store)
-        mark_begun_empty(store)
     return change_set_id
 
 

@@ -11,15 +11,14 @@ from planner.errors import InputError
 from planner.season.itinerary import (
     Itinerary,
     begins_in,
-    differences,
     ends_at,
     ends_in,
-    fixed_points,
     insert_trip,
     starts_at,
 )
 from planner.season.model import Driver, Leg, Stay
 from planner.season.travel import LegTimes
+from planner.services.itineraries import fixed_of, write_itinerary
 from planner.services.season import Calendar, read_calendar
 from planner.services.typed import local_instant
 from planner.store.store import Store
@@ -92,7 +91,7 @@ def call_off(store: Store, stay: Stay, *, by: str) -> int:
                 "stay", name, "one that leads from a place and back to it; plan others on Arrival"
             )
     with store.transaction(by, f"stay in {calendar.places[stay.place_id].name} called off") as change_set_id:
-        _write(store, planned, changed, by)
+        write_itinerary(store, planned, changed, by=by)
     return change_set_id
 
 
@@ -107,15 +106,14 @@ def _plan(
     by: str,
 ) -> None:
     planned = calendar.itinerary_of(driver)
-    sessions = [session for held in calendar.sessions.values() for session in held]
-    fixed = fixed_points(calendar.rounds, sessions, calendar.commitments, driver_id=driver.id)
+    fixed = fixed_of(calendar, driver)
     base = _reaching(planned, driver, arrive_at - AT_HOME_AROUND, leave_at + AT_HOME_AROUND, times)
     try:
         changed = insert_trip(base, place_id, arrive_at, leave_at, times, fixed)
     except InputError as problem:
         field = f"{driver.name}, {FIELD_NAMES.get(problem.field, problem.field)}"
         raise InputError(field, problem.value, problem.expected) from None
-    _write(store, planned, changed, by)
+    write_itinerary(store, planned, changed, by=by)
 
 
 def _reaching(
@@ -149,12 +147,3 @@ def _reaching(
         else:
             entries.append(Stay(driver.id, home, ends_at(last), until))
     return Itinerary(driver.id, tuple(entries))
-
-
-def _write(store: Store, planned: Itinerary, changed: Itinerary, by: str) -> None:
-    found = differences(planned, changed)
-    for entry in found.removed:
-        store.remove(entry, by=by)
-    for entry in found.changed:
-        store.change(entry, by=by)
-    store.add_all(found.added, by=by)

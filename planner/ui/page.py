@@ -173,5 +173,4 @@ def _offer_a_start(context: Context) -> None:
         st.rerun()
     if own:
         start_empty(context.store)
-        workspace.mark_begun_empty(context.store)
         go_to("team")
